@@ -1,0 +1,1 @@
+"""The second room: light and heat in one house, physics apart from solver."""

@@ -1,0 +1,1 @@
+"""The third room: tables, figures, page, workbook and command line."""

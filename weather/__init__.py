@@ -1,0 +1,1 @@
+"""The first room: the site, the sun, the sky and the hourly weather record."""
