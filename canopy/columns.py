@@ -91,7 +91,13 @@ HEAT: Final = (
 
 CLIMATE: Final = (
     _temp("outside_temp", "outside air", ("outside_temp_mean_c", "mean")),
-    _temp("temp_air", "house air", ("temp_air_min_c", "min"), ("temp_air_mean_c", "mean"), ("temp_air_max_c", "max")),
+    _temp(
+        "temp_air",
+        "house air",
+        ("temp_air_min_c", "min"),
+        ("temp_air_mean_c", "mean"),
+        ("temp_air_max_c", "max"),
+    ),
     _temp("heat_at", "heating set-point after ramps"),
     _temp("leaf", "leaves, mean", ("leaf_min_c", "min")),
     _temp("leaf_sunlit", "sunlit leaves", ("leaf_sunlit_max_c", "max")),

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -65,6 +66,6 @@ def parse(raw: object, low: float, high: float) -> Seasonal:
             raise ValueError(f"{value:g} is outside {low:g} to {high:g}")
         days.append(day_number(pair[0]))
         values.append(float(value))
-    if not days or any(b <= a for a, b in zip(days, days[1:], strict=False)):
+    if not days or any(b <= a for a, b in pairwise(days)):
         raise ValueError("dates must rise and none may stand twice")
     return Seasonal(tuple(days), tuple(values))

@@ -6,6 +6,7 @@ Units stand in README's table: metres, degrees, degC, hours of civil time, W/m2 
 from __future__ import annotations
 
 from functools import partial
+from itertools import pairwise
 from typing import Annotated, Any, Literal
 
 from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, field_validator, model_validator
@@ -52,7 +53,7 @@ class SiteKeys(Section):
         for point in points:
             if len(point) != 2 or not (0 <= point[0] <= 360 and 0 <= point[1] <= 60):
                 raise ValueError(f"{point} is no [azimuth 0-360, elevation 0-60] in degrees")
-        if any(b[0] <= a[0] for a, b in zip(points, points[1:], strict=False)):
+        if any(b[0] <= a[0] for a, b in pairwise(points)):
             raise ValueError("azimuths must rise")
         return points
 
@@ -132,7 +133,9 @@ class HouseKeys(Section):
     @classmethod
     def _paint(cls, rows: list[list[Any]]) -> list[list[Any]]:
         for row in rows:
-            if len(row) != 3 or not all(isinstance(x, int | float) and not isinstance(x, bool) for x in row[1:]):
+            if len(row) != 3 or not all(
+                isinstance(x, int | float) and not isinstance(x, bool) for x in row[1:]
+            ):
                 raise ValueError(f'{row} is no ["MM-DD", shade 0-0.9, wear-off days]')
             day_number(row[0])
             if not (0 <= row[1] <= 0.9 and 1 <= row[2] <= 400):
@@ -143,11 +146,11 @@ class HouseKeys(Section):
     def _shape(self) -> HouseKeys:
         if self.form == "arch":
             if self.pitch is not None or self.pitch_other is not None:
-                raise ValueError("an arch has a rise, not a pitch; remove pitch or write form = \"gable\"")
+                raise ValueError('an arch has a rise, not a pitch; remove pitch or write form = "gable"')
             if self.rise is None:
                 raise ValueError("an arch needs rise, the height from gutter to crown in metres")
         elif self.rise is not None:
-            raise ValueError("a gable has a pitch, not a rise; remove rise or write form = \"arch\"")
+            raise ValueError('a gable has a pitch, not a rise; remove rise or write form = "arch"')
         return self
 
 

@@ -1,0 +1,97 @@
+"""The study file as a whole: screens, quoted coverings, candidates, and the tables of `study`."""
+
+from __future__ import annotations
+
+from typing import Annotated, Any, Literal
+
+from pydantic import Field, model_validator
+
+from canopy.study import (
+    ClimateKeys,
+    CropKeys,
+    Day,
+    HeatingKeys,
+    Hour,
+    HouseKeys,
+    Name,
+    Section,
+    SiteKeys,
+    WeatherKeys,
+)
+
+Share = Annotated[float, Field(ge=0, le=1)]
+
+
+class ScreenKeys(Section):
+    """[[screen]]: a library screen with a drawing rule of its own."""
+
+    name: Name
+    based_on: Name
+    close_below_w_m2: Annotated[float, Field(ge=0, le=1500)] | None = None
+    close_above_w_m2: Annotated[float, Field(ge=0, le=1500)] | None = None
+    close_below_outside_c: Annotated[float, Field(ge=-40, le=40)] | None = None
+    from_hour: Hour | None = None
+    until_hour: Hour | None = None
+    first_day: Day = None
+    last_day: Day = None
+    humidity_gap_pct: Annotated[float, Field(ge=0, le=50)] = 0.0
+
+    @model_validator(mode="after")
+    def _pairs(self) -> ScreenKeys:
+        if (self.from_hour is None) != (self.until_hour is None):
+            raise ValueError("from_hour and until_hour stand together or not at all")
+        if (self.first_day is None) != (self.last_day is None):
+            raise ValueError("first_day and last_day stand together or not at all")
+        return self
+
+
+class CoveringKeys(Section):
+    """[[covering]]: figures from a quotation, or a laboratory spectrum."""
+
+    name: Name
+    based_on: Name | None = None
+    par_normal: Share | None = None
+    par_hemispherical: Share | None = None
+    haze: Share | None = None
+    thermal_transmittance: Share | None = None
+    u_value: Annotated[float, Field(gt=0.2, le=10)] | None = None
+    spectrum: str | None = None
+    thickness_mm: Annotated[float, Field(gt=0.005, le=100)] | None = None
+    age_years: Annotated[float, Field(ge=0, le=40)] = 0.0
+    wet: Literal["film", "drops", "none"] | None = None
+    dirt_pct_by_month: list[Share] = []
+    wash_days: list[str] = []
+
+    @model_validator(mode="after")
+    def _one_kind(self) -> CoveringKeys:
+        if (self.spectrum is None) == (self.based_on is None):
+            raise ValueError("write based_on (a library covering) or spectrum (a CSV), one of the two")
+        return self
+
+
+class CandidateKeys(Section):
+    """[[candidate]]: a covering, its screens, and overrides of house, crop, climate, heating."""
+
+    name: Name
+    covering: Name
+    screens: list[Name] = Field(default=[], max_length=2)
+    house: dict[str, Any] = {}
+    crop: dict[str, Any] = {}
+    climate: dict[str, Any] = {}
+    heating: dict[str, Any] = {}
+
+
+class StudyKeys(Section):
+    """The whole file."""
+
+    title: Annotated[str, Field(min_length=1, max_length=120)] = "Study"
+    units: Literal["si", "us"] = "si"
+    site: SiteKeys = SiteKeys()
+    weather: WeatherKeys
+    house: HouseKeys
+    crop: CropKeys = CropKeys()
+    climate: ClimateKeys = ClimateKeys()
+    heating: HeatingKeys = HeatingKeys()
+    screen: list[ScreenKeys] = []
+    covering: list[CoveringKeys] = []
+    candidate: list[CandidateKeys] = Field(min_length=1, max_length=24)
