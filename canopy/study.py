@@ -8,18 +8,15 @@ from __future__ import annotations
 from functools import partial
 from itertools import pairwise
 from typing import Annotated, Any, Literal
+from zoneinfo import ZoneInfo, available_timezones
 
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Field, field_validator, model_validator
+from pydantic import BeforeValidator, Field, field_validator, model_validator
 
+from canopy.energykeys import HeatPumpKeys, StoreKeys, TariffKeys
+from canopy.fuel import fuel_names
 from canopy.seasonal import Seasonal, day_number, parse
-
-
-class Section(BaseModel):
-    """A table of the study file: unknown keys, wrong types, nan and infinity are refused."""
-
-    model_config = ConfigDict(
-        strict=True, extra="forbid", frozen=True, allow_inf_nan=False, arbitrary_types_allowed=True
-    )
+from canopy.section import Section as Section
+from weather.errors import nearest
 
 
 def _seasonal(low: float, high: float) -> Any:
@@ -46,6 +43,17 @@ class SiteKeys(Section):
     elevation: Annotated[float, Field(ge=-430, le=5000)] | None = None
     timezone: str | None = None
     horizon: list[list[float]] = []
+
+    @field_validator("timezone")
+    @classmethod
+    def _zone(cls, name: str | None) -> str | None:
+        if name is not None:
+            try:
+                ZoneInfo(name)
+            except (KeyError, ValueError, OSError):
+                hint = nearest(name, sorted(available_timezones()))
+                raise ValueError(f'"{name}" is no IANA time zone{hint}') from None
+        return name
 
     @field_validator("horizon")
     @classmethod
@@ -223,3 +231,24 @@ class HeatingKeys(Section):
     efficiency: Annotated[float, Field(gt=0.3, le=1.1)] | None = None
     margin_pct: Annotated[float, Field(ge=0, le=100)] = 15.0
     price_per_kwh: Annotated[float, Field(ge=0, le=10)] | None = None
+    co2_kg_per_kwh: Annotated[float, Field(ge=0, le=2)] | None = None
+    tariff: TariffKeys | None = None
+    heat_pump: HeatPumpKeys | None = None
+    heat_pump_tariff: TariffKeys | None = None
+    store: StoreKeys | None = None
+
+    @field_validator("fuel")
+    @classmethod
+    def _fuel(cls, name: str) -> str:
+        if name not in fuel_names():
+            hint = nearest(name, fuel_names()) or f"; known: {', '.join(fuel_names())}"
+            raise ValueError(f'unknown fuel "{name}"{hint}')
+        return name
+
+    @model_validator(mode="after")
+    def _prices(self) -> HeatingKeys:
+        if self.tariff is not None and self.price_per_kwh is not None:
+            raise ValueError("price_per_kwh and the table tariff exclude each other")
+        if self.heat_pump_tariff is not None and self.heat_pump is None:
+            raise ValueError("heat_pump_tariff needs the table heat_pump")
+        return self
