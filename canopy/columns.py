@@ -8,8 +8,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Final, Literal
 
-How = Literal["kwh", "mol", "sum", "mean", "min", "max", "hours"]
-"""kwh: W/m2 to kWh/m2; mol: µmol m-2 s-1 to mol/m2; sum: a rate per h; hours: a share of the hour."""
+How = Literal["kwh", "mol", "sum", "mean", "min", "max", "hours", "degree_days"]
+"""kwh: W/m2 to kWh/m2; mol: µmol m-2 s-1 to mol/m2; sum: a rate per h; hours: a share of the hour;
+degree_days: K to K d."""
 
 Part = Literal["gain", "loss", "store", ""]
 
@@ -91,6 +92,13 @@ HEAT: Final = (
 
 CLIMATE: Final = (
     _temp("outside_temp", "outside air", ("outside_temp_mean_c", "mean")),
+    Column(
+        "outside_below_18_k",
+        "K",
+        "outside air below 18 °C",
+        "",
+        (("degree_days_18_k_d", "degree_days"),),
+    ),
     _temp(
         "temp_air",
         "house air",
@@ -130,7 +138,7 @@ GAINS: Final = tuple(c.name for c in COLUMNS if c.part == "gain")
 LOSSES: Final = tuple(c.name for c in COLUMNS if c.part == "loss")
 STORES: Final = tuple(c.name for c in COLUMNS if c.part == "store")
 
-DAY_UNITS: Final = {"kwh": "kWh/m2", "mol": "mol/m2", "hours": "h"}
+DAY_UNITS: Final = {"kwh": "kWh/m2", "mol": "mol/m2", "hours": "h", "degree_days": "K d"}
 
 
 def day_unit(column: Column, how: How) -> str:

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from canopy.bands import NIR_BANDS, SOLAR
 from canopy.columns import BY_NAME, COLUMNS, GAINS, LOSSES, STORES
+from canopy.degreedays import TABLE_BASE_C, below
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.light import Light, SunBands
 from canopy.run import Closure
@@ -113,9 +114,10 @@ def _climate_columns(weather: Weather, case: HeatCase, heat: HeatResult) -> dict
     coldest = np.minimum(heat.temp_leaf, heat.temp_leaf_sunlit)
     heated = case.climate.heat_at > -ZERO_C_K
     drawn = heat.screen_drawn.max(0) if len(heat.screen_drawn) else np.zeros(len(weather))
-    below = heated & (heat.temp_air < case.climate.heat_at - BELOW_SETPOINT_K)
+    cold = heated & (heat.temp_air < case.climate.heat_at - BELOW_SETPOINT_K)
     return {
         "outside_temp_c": weather.temp_air,
+        "outside_below_18_k": below(weather.temp_air, TABLE_BASE_C),
         "temp_air_c": heat.temp_air,
         "heat_at_c": np.where(heated, case.climate.heat_at, np.nan),
         "leaf_c": heat.temp_leaf,
@@ -135,7 +137,7 @@ def _climate_columns(weather: Weather, case: HeatCase, heat: HeatResult) -> dict
         "frost_share": np.where(no_crop, 0.0, 1.0 * (coldest <= 0.0)),
         "screen_drawn_share": drawn,
         "vent_open_share": 1.0 * (heat.vent_open > OPEN_VENT),
-        "below_setpoint_share": 1.0 * below,
+        "below_setpoint_share": 1.0 * cold,
         "below_limit_share": 1.0 * (heat.temp_air < case.climate.limit_c),
         "filled_weather_share": 1.0 * weather.filled,
     }
@@ -163,7 +165,7 @@ def _worst(budget: str, gap: Floats, weather: Weather) -> Closure:
 def closures(
     weather: Weather, hourly: dict[str, Floats], light: Light, heat: HeatResult
 ) -> tuple[Closure, ...]:
-    """Return the largest hourly gap of every budget, W/m2 of floor, worked out from the columns themselves."""
+    """Return the largest hourly gap of every budget, W/m2 of floor, from the columns themselves."""
     total = np.zeros(len(weather))
     for sign, names in ((1.0, GAINS), (-1.0, LOSSES), (-1.0, STORES)):
         for name in names:

@@ -15,6 +15,7 @@ Times = NDArray[np.datetime64]
 MOL_PER_UMOL = 1e-6
 KW_PER_W = 1e-3
 S_PER_H = 3600.0
+H_PER_DAY = 24.0
 
 
 def groups(time: Times, unit: str) -> tuple[Times, NDArray[np.intp]]:
@@ -28,13 +29,15 @@ def gather(values: Floats, first: NDArray[np.intp], how: How, step_s: float) -> 
     """Return one value per group of consecutive hours.
 
     `values` (H,) rates as in `columns`; kwh: W/m2 to kWh/m2; mol: µmol m-2 s-1 to mol/m2;
-    sum: per-hour rate to amount; hours: shares of an hour to hours; mean, min, max.
+    sum: per-hour rate to amount; hours: shares of an hour to hours; degree_days: K to K d; mean, min, max.
     """
     hours = step_s / S_PER_H
     if how == "kwh":
         return np.add.reduceat(values, first) * (hours * KW_PER_W)
     if how == "mol":
         return np.add.reduceat(values, first) * (step_s * MOL_PER_UMOL)
+    if how == "degree_days":
+        return np.add.reduceat(values, first) * (hours / H_PER_DAY)
     if how in ("sum", "hours"):
         return np.add.reduceat(values, first) * hours
     if how == "min":
