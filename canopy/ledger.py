@@ -37,7 +37,7 @@ def gather(values: Floats, first: NDArray[np.intp], how: How, step_s: float) -> 
     if how == "mol":
         return np.add.reduceat(values, first) * (step_s * MOL_PER_UMOL)
     if how == "degree_days":
-        return np.add.reduceat(values, first) * (hours / H_PER_DAY)
+        return np.asarray(np.add.reduceat(values, first) * (hours / H_PER_DAY))
     if how in ("sum", "hours"):
         return np.add.reduceat(values, first) * hours
     if how == "min":
@@ -45,7 +45,7 @@ def gather(values: Floats, first: NDArray[np.intp], how: How, step_s: float) -> 
     if how == "max":
         return np.maximum.reduceat(values, first)
     counts = np.diff(np.r_[first, len(values)])
-    return np.add.reduceat(values, first) / counts
+    return np.asarray(np.add.reduceat(values, first) / counts)
 
 
 def by_group(hourly: Mapping[str, Floats], first: NDArray[np.intp], step_s: float) -> dict[str, Floats]:
