@@ -1,0 +1,247 @@
+"""The first questions: which candidate, how much light by month, how much heat by month."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from canopy.run import Run
+from reports import sentences as say
+from reports.blocks import Figure, Points, Row, Section, Table, Text
+from reports.csvtables import mean_dli
+from reports.display import Display, number, percent
+from reports.figures import marks_of, month_labels
+from reports.figures_heat import FLOWS, balance_figure, month_heat_figure
+from reports.figures_light import month_light_figures, trade_figure
+from reports.summary import Summary, house_differences
+
+
+def which(run: Run, rows: Sequence[Summary], show: Display) -> Section:
+    """Return the opening section: the answer, the comparison, what is covering and what is house."""
+    blocks: list[Text | Points | Table | Figure] = [Text(say.answer(run, rows, show), lead=True)]
+    blocks.append(comparison(run, rows, show))
+    if len(rows) > 1:
+        blocks.append(trade_figure(run, rows, show))
+        blocks.append(Points((*say.trades(run, rows, show), *say.verdicts(rows))))
+    blocks += covering_and_house(run, rows, show)
+    notes = say.doubts(run)
+    if notes:
+        blocks.append(Points(notes))
+    return Section("which", "The choice", "Which covering gives what, and costs what?", tuple(blocks))
+
+
+def comparison(run: Run, rows: Sequence[Summary], show: Display) -> Table:
+    """Return the table that opens the report."""
+    span = say.period(run)
+    body = []
+    for one, mark, cand in zip(rows, marks_of(run), run.candidates, strict=True):
+        body.append(
+            Row(
+                one.name,
+                (
+                    percent(one.light_share, 1),
+                    number(one.dark_dli, 1),
+                    show.bare(one.crop_mol, "mol/m2"),
+                    show.bare(one.heat_kwh, "kWh/m2"),
+                    show.bare(one.total["night_sky_loss_kwh_m2"], "kWh/m2"),
+                    show.bare(one.peak_w, "W/m2"),
+                    show.bare(cand.sizing.design_night_w_m2, "W/m2"),
+                    show.bare(cand.sizing.boiler_kw, "kW"),
+                ),
+                mark,
+            )
+        )
+    return Table(
+        f"What each candidate gives and takes, {span}",
+        (
+            "candidate",
+            "PAR at the crop, of outside",
+            f"daily light, {say.dark_words(run, short=True)}",
+            "PAR the leaves absorb",
+            "heat",
+            "lost to the night sky",
+            "largest hour",
+            "design night",
+            "boiler",
+        ),
+        tuple(body),
+        (
+            "",
+            "",
+            "mol/m² a day",
+            show.text("mol/m2"),
+            show.text("kWh/m2"),
+            show.text("kWh/m2"),
+            show.text("W/m2"),
+            show.text("W/m2"),
+            show.text("kW"),
+        ),
+    )
+
+
+def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list[Text | Table | Points]:
+    """Return the table that keeps apart what comes from the covering and what from the house."""
+    body, lines = [], []
+    for at, (one, cand, mark) in enumerate(zip(rows, run.candidates, marks_of(run), strict=True)):
+        shell = cand.shell
+        body.append(
+            Row(
+                one.name,
+                (
+                    percent(one.sheet_par, 1),
+                    percent(cand.covering.haze),
+                    percent(one.house_par / one.sheet_par if one.sheet_par > 0 else float("nan"), 1),
+                    number(shell.roof_ratio + shell.wall_ratio, 2),
+                    number(shell.leakage_per_hour, 2),
+                    show.bare(one.total["air_change_loss_kwh_m2"], "kWh/m2"),
+                ),
+                mark,
+            )
+        )
+        found = [item for item in house_differences(run, at) if at]
+        if found:
+            lines.append(f"With {one.name}: {say.difference_words(found, rows[0].name)}.")
+    table = Table(
+        "What comes from the covering, what from the house",
+        (
+            "candidate",
+            "covering: diffuse PAR through the sheet",
+            "covering: haze",
+            "house: of that, left by shape and structure",
+            "house: covering per floor",
+            "house: leakage",
+            "house: heat lost by leakage",
+        ),
+        tuple(body),
+        ("", "", "", "", "m²/m²", "per hour", show.text("kWh/m2")),
+    )
+    blocks: list[Text | Table | Points] = [table]
+    if lines:
+        blocks.append(
+            Text(
+                (
+                    "Not every candidate stands on the same house. Where it does not, part of the difference "
+                    "in light, "
+                    "leakage and heat belongs to the house and not to the covering:",
+                )
+            )
+        )
+        blocks.append(Points(tuple(lines)))
+    return blocks
+
+
+def light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
+    """Return light by month."""
+    outside = mean_dli(run, run.candidates[0])[0]
+    inside = [mean_dli(run, one)[1] for one in run.candidates]
+    best, worst = int(np.argmin(outside)), int(np.argmax(outside))
+    months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
+    lead = [
+        f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]} "
+        f"and {number(outside[worst], 1)} in {months[worst]}."
+    ]
+    at_best = [values[best] for values in inside]
+    if all(np.isfinite(at_best)) and len(rows) > 1:
+        top, low = int(np.argmax(at_best)), int(np.argmin(at_best))
+        lead.append(
+            f"In {months[best]} the crop gets {number(at_best[top], 1)} mol/m² a day under {rows[top].name} "
+            "and "
+            f"{number(at_best[low], 1)} under {rows[low].name}."
+        )
+    elif len(rows) == 1 and np.isfinite(at_best[0]):
+        lead.append(f"In {months[best]} the crop gets {number(at_best[0], 1)} mol/m² a day.")
+    if not all(np.isfinite(values).all() for values in inside):
+        lead.append("Months without a crop have no daily light at the crop.")
+    head = ("candidate", *month_labels(run.months))
+    table = Table(
+        "Daily light (DLI): outside, and at the top of the crop (mean of the days with a crop), mol/m² a day",
+        head,
+        (
+            Row("outside", tuple(number(v, 1) for v in outside)),
+            *(
+                Row(r.name, tuple(number(v, 1) for v in values), mark)
+                for r, values, mark in zip(rows, inside, marks_of(run), strict=True)
+            ),
+        ),
+        folded=True,
+    )
+    figures = month_light_figures(run, outside, inside)
+    return Section(
+        "light",
+        "Light by month",
+        "How much light reaches the crop?",
+        (Text(tuple(lead), lead=True), *figures, table),
+    )
+
+
+def heat(run: Run, rows: Sequence[Summary], show: Display) -> Section:
+    """Return heat by month and where it goes."""
+    months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
+    lead = []
+    for one, cand in list(zip(rows, run.candidates, strict=True))[:1]:
+        by_month = cand.monthly["heat_delivered_kwh_m2"]
+        if by_month.sum() > 0:
+            at = int(np.argmax(by_month))
+            lead.append(
+                f"With {one.name}, {months[at]} takes the most heat: "
+                f"{show.say(float(by_month[at]), 'kWh/m2')}, "
+                f"{percent(float(by_month[at]) / one.heat_kwh)} of the total."
+            )
+        total = sum(
+            one.total[name] for _, names, _ in FLOWS if names for name in names if one.total[name] > 0
+        )
+        sky = one.total["sky_loss_kwh_m2"]
+        air = one.total["air_change_loss_kwh_m2"] + one.total["venting_kwh_m2"]
+        if total > 0:
+            lead.append(
+                f"Of all that leaves this house, {percent(sky / total)} goes to the sky as long-wave "
+                "radiation and "
+                f"{percent(air / total)} with the air that leaks out or is vented."
+            )
+    damp = max(rows, key=lambda r: r.total["heat_for_humidity_kwh_m2"])
+    damp_kwh = damp.total["heat_for_humidity_kwh_m2"]
+    if damp_kwh > 0.5:
+        most = "" if len(rows) == 1 else f" with {damp.name}, the most of all candidates"
+        lead.append(f"Keeping the air dry by venting costs {show.say(damp_kwh, 'kWh/m2')} of it{most}.")
+    table = Table(
+        f"Heat delivered by month, {show.text('kWh/m2')}",
+        ("candidate", *month_labels(run.months), "sum"),
+        tuple(
+            Row(
+                r.name,
+                (
+                    *(show.bare(v, "kWh/m2", 1) for v in cand.monthly["heat_delivered_kwh_m2"]),
+                    show.bare(r.heat_kwh, "kWh/m2", 1),
+                ),
+                mark,
+            )
+            for r, cand, mark in zip(rows, run.candidates, marks_of(run), strict=True)
+        ),
+        folded=True,
+    )
+    flows = Table(
+        f"What comes in and what goes out, {show.text('kWh/m2')}",
+        ("candidate", *(mark.name for mark, _, _ in FLOWS)),
+        tuple(
+            Row(
+                r.name,
+                tuple(show.bare(sum(r.total[n] for n in names), "kWh/m2", 1) for _, names, _ in FLOWS),
+                mark,
+            )
+            for r, mark in zip(rows, marks_of(run), strict=True)
+        ),
+        folded=True,
+    )
+    return Section(
+        "heat",
+        "Heat by month",
+        "How much heat does it take, and where does it go?",
+        (
+            Text(tuple(lead), lead=True),
+            month_heat_figure(run, show),
+            table,
+            balance_figure(run, rows, show),
+            flows,
+        ),
+    )

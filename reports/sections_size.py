@@ -1,0 +1,334 @@
+"""How big the heating must be: hours and design night side by side, boiler sizes, stores, fuel."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+
+from canopy.run import CandidateRun, Run
+from reports import sentences as say
+from reports.blocks import Block, Chooser, Each, Points, Row, Section, Table, Text
+from reports.display import NONE, Display, number, percent, pretty
+from reports.figures import marks_of
+from reports.figures_heat import duration_figure
+from reports.summary import Summary
+
+
+def size(run: Run, rows: Sequence[Summary], show: Display) -> Section:
+    """Return peak, duration, design night step by step, boiler sizes, stores and fuel."""
+    title, question = "Heating size", "How big must the heating be?"
+    each = tuple(_one(one, show) for one in run.candidates)
+    blocks: list[Block | Each | Chooser] = [
+        Text(_lead(run, rows, show), lead=True),
+        size_table(run, rows, show),
+        duration_figure(run, show),
+        Chooser("Worked out for"),
+        Each(each),
+    ]
+    blocks += _several_years(run, show)
+    fuels = energy_table(run, show)
+    if fuels is not None:
+        blocks.append(fuels)
+    blocks.append(
+        Text(
+            (
+                "A planning figure: local codes, the designer's margins and licensed design come first. Read "
+                "the cautions below on "
+                "snow, power failure and combustion air before ordering.",
+            )
+        )
+    )
+    return Section("size", title, question, tuple(blocks))
+
+
+def size_table(run: Run, rows: Sequence[Summary], show: Display) -> Table:
+    """Return the sizes of all candidates."""
+    body = []
+    for r, one, mark in zip(rows, run.candidates, marks_of(run), strict=True):
+        s = one.sizing
+        body.append(
+            Row(
+                r.name,
+                (
+                    show.bare(s.peak_w_m2, "W/m2"),
+                    say.short_hour(s.peak_at) if s.peak_w_m2 > 0 else NONE,
+                    show.bare(s.load_exceeded_35_h_w_m2, "W/m2"),
+                    show.bare(s.load_exceeded_88_h_w_m2, "W/m2"),
+                    show.bare(s.design_night_w_m2, "W/m2"),
+                    show.bare(s.design_outside_c, "degC"),
+                    show.bare(s.design_heat_kw, "kW"),
+                    number(s.full_load_hours),
+                    f"{show.bare(s.boiler_kw, 'kW')}",
+                ),
+                mark,
+            )
+        )
+    unit = show.text("W/m2")
+    margins = sorted({one.sizing.margin_pct for one in run.candidates})
+    margin = f"+{number(margins[0])}\u202f%" if len(margins) == 1 else "with margin"
+    return Table(
+        "Size of the heating",
+        (
+            "candidate",
+            "largest hour",
+            "when",
+            "exceeded in 35 h",
+            "in 88 h",
+            "design night",
+            "outside then",
+            "design heat",
+            "full-load hours",
+            f"boiler, {margin}",
+        ),
+        tuple(body),
+        ("", unit, "", unit, unit, unit, show.text("degC"), show.text("kW"), "h a year", show.text("kW")),
+    )
+
+
+def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
+    name, s = rows[0].name, run.candidates[0].sizing
+    if s.design_w_m2 <= 0:
+        return (f"With {name} no heat is asked for under the set-points given.",)
+    first = f"With {name} the largest simulated hour takes {show.say(s.peak_w_m2, 'W/m2')}"
+    if np.isfinite(s.design_night_w_m2):
+        night, cold = show.say(s.design_night_w_m2, "W/m2"), show.say(s.design_outside_c, "degC")
+        first += f", the design night {night} at {cold} outside"
+    lines = [f"{first}. The design heat is taken from: {s.basis}."]
+    if len(rows) > 1:
+        small = min(run.candidates, key=lambda c: c.sizing.boiler_kw)
+        large = max(run.candidates, key=lambda c: c.sizing.boiler_kw)
+        lines.append(
+            f"The boiler ranges from {show.say(small.sizing.boiler_kw, 'kW')} ({small.plan.name}) to "
+            f"{show.say(large.sizing.boiler_kw, 'kW')} ({large.plan.name}), margin included."
+        )
+    if run.weather.typical:
+        lines.append(
+            "The weather is a typical year: its extremes are removed, so its largest hour alone is no size."
+        )
+    return tuple(lines)
+
+
+def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
+    blocks: list[Block] = []
+    night = one.design
+    if night is not None:
+        blocks += [
+            _night_table(night, load, one.plan.name, show) for load in (night.drawn, night.open) if load
+        ]
+        blocks.append(_outside_table(night, show))
+        blocks.append(
+            Points(tuple(map(pretty, (night.hand.text, f"Recovery after the night: {night.recovery.text}."))))
+        )
+    if show.system == "si":
+        blocks.append(Points(tuple(map(pretty, one.sizing.explained))))
+    if one.sizing.finite is not None:
+        blocks.append(Text((_finite_words(one, show),)))
+    if one.sizing.design_w_m2 > 0:
+        blocks += [_share_table(one, show), _store_table(one, show)]
+    return tuple(blocks)
+
+
+def _night_table(night: Any, load: Any, name: str, show: Display) -> Table:
+    state = {"drawn": "screens drawn", "open": "screens open", "none": "no screens"}[load.screens]
+    rows = [
+        Row(part.name, (show.bare(part.w_m2, "W/m2", 1), show.bare(part.kw, "kW", 1), pretty(part.how)))
+        for part in load.components
+    ]
+    total = show.bare(load.total_w_m2, "W/m2", 1), show.bare(load.total_kw, "kW", 1), "all of the above"
+    rows.append(Row("heat for the design night", total, strong=True))
+    return Table(
+        f"The design night step by step, {state}: {name}",
+        ("part", "per floor", "whole house", "how"),
+        tuple(rows),
+        ("", show.text("W/m2"), show.text("kW"), "worked in SI" if show.system == "us" else ""),
+        words=True,
+    )
+
+
+def _outside_table(night: Any, show: Display) -> Table:
+    o = night.outside
+    rows = (
+        Row("outside temperature", (show.say(o.temp_c, "degC"), o.temp_source)),
+        Row(
+            "the record's own 99.6 %",
+            (show.say(o.temp_data_c, "degC"), "colder than this in 35 hours a year"),
+        ),
+        Row("inside temperature", (show.say(night.inside_c, "degC"), night.inside_source)),
+        Row("wind at 10 m in the open", (show.say(o.wind_m_s, "m/s"), o.wind_source)),
+        Row(
+            "long-wave from a clear sky",
+            (show.say(o.sky_w_m2, "W/m2"), "the model of the hourly run, without cloud"),
+        ),
+    )
+    return Table(
+        "What the design night stands on", ("", "value", "where from"), rows, folded=True, words=True
+    )
+
+
+def _finite_words(one: CandidateRun, show: Display) -> str:
+    run = one.sizing.finite
+    if not run.solved_again:
+        return (
+            f"A boiler of {show.say(run.capacity_w_m2, 'W/m2')} is never at its limit in this record; the "
+            "lowest house air is "
+            f"{show.say(run.lowest_air_c, 'degC')}."
+        )
+    return (
+        f"With a boiler of {show.say(run.capacity_w_m2, 'W/m2')} the year was run again: it is at its limit "
+        "in "
+        f"{number(run.limited_h)} hours, the air is short of its set-point in {number(run.deficit_h)} hours "
+        f"({number(run.deficit_kh)} kelvin hours), and the lowest house air is "
+        f"{show.say(run.lowest_air_c, 'degC')} on "
+        f"{say.hour_words(run.lowest_at)}."
+    )
+
+
+def _share_table(one: CandidateRun, show: Display) -> Table:
+    curve, s = one.sizing.curve, one.sizing
+    cells = zip(curve.size_share, curve.heat_share, curve.full_load_h, strict=True)
+    rows = tuple(
+        Row(
+            f"{percent(share)} of the design heat",
+            (
+                show.bare(share * s.design_w_m2, "W/m2"),
+                show.bare(share * s.design_heat_kw, "kW"),
+                percent(heat, 1),
+                number(hours),
+            ),
+        )
+        for share, heat, hours in cells
+    )
+    return Table(
+        f"What a smaller boiler still covers: {one.plan.name}",
+        ("boiler", "per floor", "whole house", "share of the heat", "full-load hours"),
+        rows,
+        ("", show.text("W/m2"), show.text("kW"), "", "h"),
+        folded=True,
+    )
+
+
+def _store_table(one: CandidateRun, show: Display) -> Table:
+    s = one.sizing.stores
+    rows = tuple(
+        Row(
+            f"{number(volume)} m³ per 1000 m²",
+            (show.bare(held, "kWh/m2", 2), show.bare(boiler, "W/m2"), show.bare(reserve, "W/m2")),
+        )
+        for volume, held, boiler, reserve in zip(
+            s.volume_m3, s.capacity_kwh_m2, s.boiler_w_m2, s.with_reserve_w_m2, strict=True
+        )
+    )
+    return Table(
+        f"Smallest boiler beside a heat store of {number(s.spread_k)} K: {one.plan.name}. Perfect foresight; "
+        "last column with "
+        f"{number(s.reserve_pct)}\u202f% operating reserve",
+        ("store", "holds", "smallest boiler", "with reserve"),
+        rows,
+        ("", show.text("kWh/m2"), show.text("W/m2"), show.text("W/m2")),
+        folded=True,
+    )
+
+
+def _several_years(run: Run, show: Display) -> list[Block]:
+    spells = run.candidates[0].sizing.spells
+    blocks: list[Block] = []
+    if spells:
+        parts = [
+            f"{number(x.hours)} h: {show.say(x.mean_c, 'degC')} from {say.hour_words(x.start)}"
+            for x in spells
+        ]
+        blocks.append(Text((f"Coldest spells of the record, mean outside air: {'; '.join(parts)}.",)))
+    many = [(one, one.sizing.many) for one in run.candidates if one.sizing.many is not None]
+    if not many:
+        blocks.append(
+            Text(("One weather year only: spread between years and return levels were not computed.",))
+        )
+        return blocks
+    rows = []
+    for (one, m), mark in zip(many, marks_of(run), strict=True):
+        levels = "; ".join(
+            f"{number(x.years)} years: {show.bare(x.level, 'W/m2')} ({show.bare(x.low, 'W/m2')} to "
+            f"{show.bare(x.high, 'W/m2')})"
+            for x in m.levels
+        )
+        rows.append(
+            Row(
+                one.plan.name,
+                (
+                    number(len(m.years)),
+                    f"{show.bare(float(m.peak_w_m2.min()), 'W/m2')} to "
+                    f"{show.bare(float(m.peak_w_m2.max()), 'W/m2')}",
+                    f"{show.bare(float(m.annual_heat_kwh_m2.min()), 'kWh/m2')} to "
+                    f"{show.bare(float(m.annual_heat_kwh_m2.max()), 'kWh/m2')}",
+                    levels or "not computed",
+                ),
+                mark,
+            )
+        )
+    blocks.append(
+        Table(
+            "Spread over the years; load reached once in so many years, with its 90 % interval",
+            ("candidate", "years", "largest hour", "heat in a year", "return level"),
+            tuple(rows),
+            ("", "", show.text("W/m2"), show.text("kWh/m2"), show.text("W/m2")),
+            words=True,
+        )
+    )
+    blocks.append(Points(tuple(dict.fromkeys(m.note for _, m in many))))
+    return blocks
+
+
+def energy_table(run: Run, show: Display) -> Table | None:
+    """Return fuel, CO2 and cost; None when no candidate has a supply."""
+    rows, priced = [], False
+    for one, mark in zip(run.candidates, marks_of(run), strict=True):
+        e = one.sizing.energy
+        if e is None:
+            continue
+        cost = e.total_cost
+        priced = priced or cost is not None
+        currency = next((c.currency for c in (e.boiler_cost, e.electricity_cost) if c is not None), "")
+        pump = e.pump
+        rows.append(
+            Row(
+                one.plan.name,
+                (
+                    e.boiler.fuel.title,
+                    f"{number(e.boiler.amount)} {_unit(e.boiler.fuel.unit)}",
+                    number(e.boiler.gross_kwh),
+                    NONE if e.electricity is None else number(e.electricity.gross_kwh),
+                    NONE
+                    if pump is None
+                    else f"{number(pump.seasonal, 2)} ({percent(pump.heat_share)} of the heat)",
+                    NONE if e.co2_kg is None else f"{number(e.co2_kg / 1000.0, 1)}",
+                    NONE if cost is None else f"{number(cost)} {currency}".strip(),
+                ),
+                mark,
+            )
+        )
+    if not rows:
+        return None
+    note = "" if priced else "; no price is given in the study"
+    return Table(
+        "Fuel for the whole house, "
+        f"{say.period(run) if len(run.hours) == len(run.weather) else 'whole record'}{note}",
+        (
+            "candidate",
+            "supply",
+            "bought",
+            "gross heating value",
+            "electricity",
+            "heat pump, seasonal",
+            "CO₂",
+            "cost",
+        ),
+        tuple(rows),
+        ("", "", "", "kWh", "kWh", "", "t", ""),
+        words=True,
+    )
+
+
+def _unit(unit: str) -> str:
+    return {"m3": "m³", "l": "litres", "t": "t", "kWh": "kWh"}.get(unit, unit)

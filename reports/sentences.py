@@ -1,0 +1,214 @@
+"""The numbers in words. Every function returns plain sentences; nothing is said that was not computed."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any, Final
+
+import numpy as np
+
+from canopy.run import Run
+from canopy.seasonal import Seasonal
+from reports.display import Display, number, percent
+from reports.summary import FULL_YEAR_DAYS, Summary, beaten, dark_months
+
+MONTHS: Final = (
+    "January", "February", "March", "April", "May", "June",
+    "July", "August", "September", "October", "November", "December",
+)  # fmt: skip
+
+SAME: Final = 0.005  # differences below half a per cent are not told apart in words
+
+KEY_WORDS: Final = {
+    "house.form": "form",
+    "house.spans": "spans",
+    "house.span_width": "span width",
+    "house.length": "length",
+    "house.gutter_height": "gutter height",
+    "house.pitch": "pitch",
+    "house.pitch_other": "second pitch",
+    "house.rise": "rise of the arch",
+    "house.ridge_azimuth": "direction of the ridge",
+    "house.gutter_width": "gutter width",
+    "house.gutter_depth": "gutter depth",
+    "house.ridge_width": "ridge width",
+    "house.ridge_depth": "ridge depth",
+    "house.bar_spacing": "distance of bars",
+    "house.bar_width": "bar width",
+    "house.bar_depth": "bar depth",
+    "house.leakage_per_hour": "leakage per hour",
+    "house.vent_area_fraction": "vent area",
+    "house.insect_net": "insect net",
+    "house.wind_exposure": "exposure to wind",
+    "house.perimeter_loss": "loss of the foundation",
+    "house.wall_covering": "covering of the walls",
+    "house.gable_covering": "covering of the gables",
+    "house.paint": "shading paint",
+}
+
+
+def day_words(day: np.datetime64) -> str:
+    """Return "3 January"."""
+    text = str(day.astype("datetime64[D]"))
+    return f"{int(text[8:10])} {MONTHS[int(text[5:7]) - 1]}"
+
+
+def hour_words(at: np.datetime64) -> str:
+    """Return "3 January, 05:00"."""
+    return f"{day_words(at)}, {str(at.astype('datetime64[m]'))[11:16]}"
+
+
+def short_day(day: np.datetime64) -> str:
+    """Return "3 Jan"."""
+    text = str(day.astype("datetime64[D]"))
+    return f"{int(text[8:10])} {MONTHS[int(text[5:7]) - 1][:3]}"
+
+
+def short_hour(at: np.datetime64) -> str:
+    """Return "3 Jan 05:00"."""
+    return f"{short_day(at)} {str(at.astype('datetime64[m]'))[11:16]}"
+
+
+def listed(names: Sequence[str]) -> str:
+    """Return "a, b and c"."""
+    return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
+
+
+def period(run: Run) -> str:
+    """Return what totals refer to: a year, or the reported season."""
+    if len(run.days) >= FULL_YEAR_DAYS:
+        years = len(run.days) / 365.0
+        return "a year" if years < 1.5 else f"in {number(years)} years"
+    if not (np.diff(run.days.astype(int)) == 1).all():
+        gap = int(np.argmax(np.diff(run.days.astype(int))))
+        return f"from {day_words(run.days[gap + 1])} to {day_words(run.days[gap])}"
+    return f"from {day_words(run.days[0])} to {day_words(run.days[-1])}"
+
+
+def dark_words(run: Run, short: bool = False) -> str:
+    """Return the names of the darkest months: "November, December and January", or "Nov, Dec, Jan"."""
+    numbers = sorted({int(m[5:7]) for m, dark in zip(run.months, dark_months(run), strict=True) if dark})
+    if {1, 12} <= set(numbers):  # begin before the turn of the year
+        numbers = sorted(numbers, key=lambda m: (m < 7, m))
+    if short:
+        return ", ".join(MONTHS[m - 1][:3] for m in numbers)
+    return listed([MONTHS[m - 1] for m in numbers])
+
+
+def change(new: float, old: float, what: str) -> str:
+    """Return "12 % less heat", "3.1 % more heat" or "the same heat"."""
+    if old <= 0 or not np.isfinite(new / old):
+        return f"{what} that cannot be compared"
+    step = new / old - 1.0
+    if abs(step) < SAME:
+        return f"the same {what}"
+    return f"{percent(abs(step), 0 if abs(step) >= 0.095 else 1)} {'less' if step < 0 else 'more'} {what}"
+
+
+def answer(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
+    """Return the opening: who needs least heat, who gives most light."""
+    span, base = period(run), rows[0]
+    if len(rows) == 1:
+        light = f"Light: {percent(base.light_share)} of the outside PAR reaches the top of the crop"
+        peak = show.say(base.peak_w, "W/m2")
+        return f"{light}.", f"Heat: {show.say(base.heat_kwh, 'kWh/m2')} {span}, {peak} in the largest hour."
+    cool = min(rows, key=lambda r: r.heat_kwh)
+    bright = max(rows, key=lambda r: r.inside_mol)
+    if cool.heat_kwh <= 0:
+        lines = ["No candidate needs heat under the set-points given."]
+    else:
+        against = "" if cool is base else f", {change(cool.heat_kwh, base.heat_kwh, 'heat')} than {base.name}"
+        lines = [f"Least heat: {cool.name}, {show.say(cool.heat_kwh, 'kWh/m2')} {span}{against}."]
+    also = " as well" if bright is cool else ""
+    lines.append(
+        f"Most light: {bright.name}{also}, {show.say(bright.inside_mol, 'mol/m2')} of PAR at the top of the "
+        f"crop {span}, "
+        f"{percent(bright.light_share)} of what falls outside."
+    )
+    return tuple(lines)
+
+
+def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
+    """Return one sentence per further candidate: heat, light and peak against the first one."""
+    base, lines = rows[0], []
+    for one in rows[1:]:
+        dark = change(one.dark_inside_mol, base.dark_inside_mol, "light")
+        text = (
+            f"Against {base.name}, {one.name} takes {change(one.heat_kwh, base.heat_kwh, 'heat')} and gives "
+            "the crop "
+            f"{change(one.inside_mol, base.inside_mol, 'light')} ({dark} in {dark_words(run)}); the largest "
+            "hour takes "
+            f"{show.say(one.peak_w, 'W/m2')} instead of {show.say(base.peak_w, 'W/m2')}."
+        )
+        saved, lost = base.heat_kwh - one.heat_kwh, base.inside_mol - one.inside_mol
+        if saved > SAME * base.heat_kwh and lost > SAME * base.inside_mol:
+            text += f" For each mol of PAR given up it saves {show.say(saved / lost, 'kWh/mol')} of heat."
+        lines.append(text)
+    return tuple(lines)
+
+
+def verdicts(rows: Sequence[Summary]) -> tuple[str, ...]:
+    """Return who is beaten in light, heat and peak at once, and what the figures leave open."""
+    lines = [
+        f"Beaten on all three counts: {worse.name} gives less light than {better.name}, needs more heat and "
+        "has a "
+        "larger peak."
+        for worse, better in beaten(tuple(rows))
+    ]
+    if len(rows) > 1:
+        lines.append(
+            "Which one pays is a matter of the price of heat, of the worth of the light at your crop, and of "
+            "what "
+            "each covering costs, lasts and weighs. These figures say what each gives and takes."
+        )
+    return tuple(lines)
+
+
+def doubts(run: Run) -> tuple[str, ...]:
+    """Return how far the figures may be trusted, as far as that is known from the run itself."""
+    weather, lines = run.weather, []
+    if weather.clear_sky:
+        lines.append(
+            "The weather is a computed clear-sky record: light is an upper bound, and nights are colder for "
+            "the "
+            "roof than real ones."
+        )
+    if weather.typical:
+        lines.append(
+            "The weather is a typical year: months from different years, the extremes removed. Season totals "
+            "are "
+            "ordinary ones; the largest hour is not a sizing figure."
+        )
+    if weather.longwave_modelled.any():
+        share = float(weather.longwave_modelled[run.hours].mean())
+        lines.append(
+            f"Long-wave radiation from the sky is computed, not measured, in {percent(share)} of the hours; "
+            "such models "
+            "miss single hours by 14-20 W/m² (root mean square on measured records)."
+        )
+    return tuple(lines)
+
+
+def value_words(value: Any) -> str:
+    """Return a study value as a reader writes it."""
+    if isinstance(value, Seasonal):
+        if len(set(value.values)) == 1:
+            return f"{value.values[0]:g}"
+        return f"{min(value.values):g} to {max(value.values):g} by date"
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if isinstance(value, float | int):
+        return f"{value:g}"
+    if value is None:
+        return "as usual"
+    return str(value) if not isinstance(value, list) else f"{len(value)} entries"
+
+
+def difference_words(found: Sequence[tuple[str, Any, Any]], base: str) -> str:
+    """Return how a candidate's house, crop, climate or heating differs from the first candidate's."""
+    parts = [
+        f"{KEY_WORDS.get(key, key.replace('.', ' ').replace('_', ' '))} {value_words(mine)} instead of "
+        f"{value_words(other)}"
+        for key, other, mine in found
+    ]
+    return f"{listed(parts)} (against {base})"
