@@ -54,8 +54,10 @@ def settle_place(request: WeatherRequest, raw: RawWeather) -> Place:
     if zone is None:
         if offset is None:
             raise UserError(f"site: {raw.source} names no time zone; give timezone")
-        zone = zone_of_offset(offset)
-        text = f"no civil time zone given: schedules follow UTC{offset:+g} h without daylight saving"
+        fits = abs((offset - longitude / 15.0 + 12.0) % 24.0 - 12.0) <= 2.0
+        kept = offset if fits else float(round(longitude / 15.0))  # a file in UTC from far away
+        zone = zone_of_offset(kept)
+        text = f"no civil time zone given: schedules follow UTC{kept:+g} h without daylight saving"
         findings.append(Finding("time-zone", "note", text))
     if offset is None:
         offset = standard_offset_h(zone)

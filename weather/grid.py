@@ -136,6 +136,11 @@ def _averaged(
     end = np.minimum(begin + raw.step_s, np.append(begin[1:], np.inf))
     edges: Floats = np.arange(hours + 1, dtype=np.float64) * HOUR_S
     covered = np.diff(_integral(edges, begin, end, np.ones(len(begin)))) / HOUR_S
+    if not raw.typical and hours > 1:  # a record may begin and end within an hour
+        skip = int(covered[0] < LEAST_SHARE)
+        drop = int(covered[-1] < LEAST_SHARE)
+        edges, covered = edges[skip : len(edges) - drop], covered[skip : len(covered) - drop]
+        first, hours = first + skip * np.timedelta64(3600, "s"), len(covered)
     _missing(int((covered < LEAST_SHARE).sum()), hours, findings)
     thin = (covered >= LEAST_SHARE) & (covered < 1.0 - 1e-6)
     columns = {}

@@ -15,7 +15,7 @@ from weather.sun import declination
 SCAN_MIN: Final = np.arange(-90, 91, 5)
 SCAN_ROWS: Final = 9000  # a scan looks at no more rows than this, evenly spread
 LOW_SUN_COS: Final = 0.17  # closure is judged with the sun above 10 degrees
-ACT_MIN: Final = 15.0  # a smaller disagreement than this is left alone
+ACT_MIN: Final = 8.0  # a smaller disagreement than this is left alone
 CLOCK_H: Final = 0.75  # noon this far off means another clock
 
 
@@ -162,14 +162,20 @@ def _decide(
     worse = scan.rms_expected > 1.3 * scan.rms_best + 2.0
     if abs(off) < ACT_MIN or not worse:
         return 3600.0 * coarse_h, expected
+    format_label = (
+        raw.format != "logger"
+    )  # the format fixes the label, so a whole zone off is the clock's fault
+    for hours in (utc_offset_h, -utc_offset_h):
+        if format_label and hours and abs(off - 60.0 * hours) <= ACT_MIN:
+            return 3600.0 * (coarse_h + hours), expected
+    half = raw.step_s / 120.0
+    for minutes in (-half, 0.0, half):
+        if abs(scan.best_min - minutes) <= 0.2 * half:
+            return 3600.0 * coarse_h, 60.0 * minutes
     for hours in (utc_offset_h, -utc_offset_h, 1.0, -1.0):
         rest = off - 60.0 * hours
         if hours and abs(off) > 30.0 and abs(rest) <= 35.0:
-            keep = expected if abs(rest) < ACT_MIN else expected + 60.0 * rest
-            return 3600.0 * (coarse_h + hours), keep
-    for minutes in (-30.0, 0.0, 30.0):
-        if abs(scan.best_min - minutes) <= 6.0 and raw.step_s == 3600.0:
-            return 3600.0 * coarse_h, 60.0 * minutes
+            return 3600.0 * (coarse_h + hours), expected if abs(rest) < ACT_MIN else expected + 60.0 * rest
     return 3600.0 * coarse_h, 60.0 * scan.best_min
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
@@ -64,9 +64,10 @@ def choose(
             header = hits[0]
         taken.add(header)
         unit = (units or {}).get(quantity) or plain[header][1]
-        result.append(
-            Choice(quantity, header, unit or ("" if quantity == "time" else allowed_units(quantity)[0]))
-        )
+        if quantity in ("time", "pressure", "relative_humidity"):
+            result.append(Choice(quantity, header, unit or ""))  # without a unit these tell it by their size
+        else:
+            result.append(Choice(quantity, header, unit or allowed_units(quantity)[0]))
     found = [choice.quantity for choice in result]
     for needed in ("time", "temp_air"):
         if needed not in found:
@@ -75,6 +76,48 @@ def choose(
                 f"name it under weather -> columns"
             )
     return result
+
+
+def unit_by_size(quantity: str, numbers: Floats) -> str:
+    """Tell Pa, hPa and kPa, or percent and fraction, by the size of the values."""
+    known = numbers[np.isfinite(numbers)]
+    if quantity == "pressure":
+        middle = float(np.median(known)) if len(known) else 1e5
+        return "pa" if middle > 2e3 else "hpa" if middle > 200.0 else "kpa"
+    return "fraction" if len(known) and float(known.max()) <= 1.01 else "%"
+
+
+def join_time(
+    headers: list[str], body: list[str], separator: str, columns: Mapping[str, str] | None
+) -> tuple[list[str], list[str]]:
+    """Put a "stamp" column in front where date and time, or year, month, day and hour, stand apart."""
+    plain = [plain_name(header)[0] for header in headers]
+    if "time" in (columns or {}):
+        return headers, body
+    if "date" in plain and "time" in plain:
+        places, form = [plain.index("date"), plain.index("time")], "{} {}"
+    elif not any(name in NAMES["time"] for name in plain) and {"year", "month", "day", "hour"} <= set(plain):
+        names = ["year", "month", "day", "hour", *(["minute"] if "minute" in plain else [])]
+        places = [plain.index(name) for name in names]
+        form = "{}-{}-{} {}:{}" if len(places) == 5 else "{}-{}-{} {}:00"
+    else:
+        return headers, body
+    fresh = "stamp"
+    while fresh in headers:
+        fresh += "_"
+    joined = []
+    for line in body:
+        parts = [part.strip().strip('"') for part in line.split(separator)]
+        if not line.strip():
+            joined.append("")
+            continue
+        stamp = form.format(*(parts[k] for k in places)) if len(parts) == len(headers) else ""
+        if form.count(":") and len(places) == 5:
+            head, _, minute = stamp.rpartition(":")
+            stamp = f"{head}:{minute.zfill(2)}"
+        joined.append(f"{stamp}{separator}{line}")
+    apart = [f"part of {name}" if k in places else name for k, name in enumerate(headers)]
+    return [fresh, *apart], joined
 
 
 def read_logger_csv(
@@ -100,8 +143,9 @@ def read_logger_csv(
     for name in named:
         if named.count(name) > 1:
             raise UserError(f'{where}, line {first + 1}: the column "{name}" is there twice')
-    chosen = choose(headers, columns, units, where)
     body = lines[first + 1 :]
+    headers, body = join_time(headers, body, separator, columns)
+    chosen = choose(headers, columns, units, where)
     rows = table(body, headers, [choice.header for choice in chosen], first + 2, separator)
     if not len(rows.lines):
         raise UserError(f"{where}: no row could be read ({rows.rows_lost} rows of another shape)")
@@ -193,11 +237,15 @@ def _record(
         findings += (saving,) if saving else ()
     step = regular_step(stamp, where)
     result: dict[str, Floats] = {}
+    read: list[str] = []
     for choice in chosen[1:]:
         numbers = values[choice.header].copy()
         for code in MISSING:
             numbers[numbers == code] = np.nan
         spot = f'{where}, column "{choice.header}"'
+        if not choice.unit:
+            choice = replace(choice, unit=unit_by_size(choice.quantity, numbers))
+        read.append(f'{choice.quantity} from "{choice.header}" in {choice.unit}')
         result[choice.quantity] = to_si(choice.quantity, numbers, choice.unit, step, spot)
         if choice.quantity == "ghi" and "umol" in choice.unit.lower().replace("µ", "u").replace("μ", "u"):
             text = "global radiation computed from photons (2.02 µmol of PAR per J of global radiation)"
@@ -205,7 +253,7 @@ def _record(
     vapour = result.pop("vapour_pressure", None)
     if vapour is not None and "temp_dew" not in result:
         result["temp_dew"] = psychro.dew_point(np.where(vapour > 0.0, vapour, np.nan), "water")
-    said = ", ".join(f"{c.quantity} from {c.header!r} in {c.unit}" for c in chosen[1:])
+    said = ", ".join(read)
     findings += (Finding("columns", "note", f"columns: {said}"),)
     return RawWeather(
         title=where,

@@ -53,7 +53,7 @@ def read_pvgis_csv(lines: list[str], where: str) -> RawWeather:
     rows, stamp = rows.keep(good), stamp[good]
     columns = {key: column(rows.numbers(name), MISSING) for key, name in COLUMNS.items() if rows.has(name)}
     place = [
-        header_float(head.get(key, ""), key.split(" (")[0].lower(), where)
+        header_float(head[key], key.split(" (")[0].lower(), where) if key in head else None
         for key in ("Latitude (decimal degrees)", "Longitude (decimal degrees)", "Elevation (m)")
     ]
     offset = header_float(head.get("Irradiance Time Offset (h)", "0"), "irradiance time offset", where)
@@ -83,7 +83,7 @@ def read_pvgis_json(text: str, where: str) -> RawWeather:
         key: column(np.array([_number(row.get(name)) for row in rows])[good], MISSING)
         for key, name in COLUMNS.items()
     }
-    place = [
+    place: list[float | None] = [
         header_float(str(location.get(key, "")), key, where) for key in ("latitude", "longitude", "elevation")
     ]
     offset = header_float(str(location.get("irradiance_time_offset", 0.0)), "irradiance_time_offset", where)
@@ -121,7 +121,7 @@ def _stamps(texts: list[str]) -> tuple[Times, np.ndarray[tuple[int, ...], np.dty
 
 def _record(
     where: str,
-    place: list[float],
+    place: list[float | None],
     offset_h: float,
     stamp: Times,
     columns: dict[str, Floats],
@@ -134,7 +134,7 @@ def _record(
     if "longwave_down" in columns:
         columns["longwave_down"][columns["longwave_down"] < 30.0] = np.nan
     return RawWeather(
-        title=f"PVGIS typical year at {latitude:.2f}, {longitude:.2f}",
+        title="PVGIS typical year" + ("" if None in place else f" at {latitude:.2f}, {longitude:.2f}"),
         source=f"{where}: PVGIS typical year (European Union), satellite radiation and reanalysis",
         format="PVGIS",
         latitude=latitude,

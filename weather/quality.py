@@ -28,7 +28,7 @@ LIMITS: Final = {
 
 NIGHT_OFFSET_W_M2: Final = -20.0  # thermal offsets of pyranometers reach this far below zero
 DEW_SLACK_K: Final = 0.5  # rounding of two instruments
-FROZEN_H: Final = {"temp_air": 24, "relative_humidity": 36, "wind_speed": 36, "temp_dew": 48}
+FROZEN_H: Final = {"temp_air": 36, "relative_humidity": 36, "wind_speed": 36, "temp_dew": 48}
 FROZEN_SUN_H: Final = 5
 JOINT_K: Final = 8.0  # a step of temperature at a month joint worth saying
 

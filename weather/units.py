@@ -41,7 +41,18 @@ LINEAR: Final[dict[str, dict[str, float]]] = {
 TEMPERATURES: Final = ("degc", "degf", "k")
 
 NAMES: Final[dict[str, tuple[str, ...]]] = {
-    "time": ("time", "timestamp", "datetime", "date time", "date/time", "time(utc)", "zeit", "datum", "tijd"),
+    "time": (
+        "stamp",
+        "time",
+        "timestamp",
+        "datetime",
+        "date time",
+        "date/time",
+        "date",
+        "zeit",
+        "datum",
+        "tijd",
+    ),
     "ghi": (
         "ghi",
         "global",
