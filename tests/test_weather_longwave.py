@@ -40,12 +40,10 @@ def test_crawford_duchon_lies_between_clear_and_black(clearness: float, clear: f
     assert clear - 1e-12 <= value <= 1.0 + 1e-12
 
 
-def measured(frame: pd.DataFrame, path: Path, **site: float) -> tuple[Weather, np.ndarray]:
+def measured(frame: pd.DataFrame, path: Path, zone: str, **site: float) -> tuple[Weather, np.ndarray]:
     """Write a station's minutes as a plain record, read it with our reader, add the measured hours."""
     frame.to_csv(path, index_label="time")
-    request = WeatherRequest(
-        file=path, timezone="Etc/GMT", longwave="model", label="start", columns=None, **site
-    )
+    request = WeatherRequest(file=path, timezone=zone, longwave="model", label="start", **site)
     weather = load_weather(request)
     hours = frame["longwave_down"].groupby(frame.index.floor("h")).mean()
     start = pd.DatetimeIndex(
@@ -61,7 +59,7 @@ def test_model_on_payerne_june_2016(samples: Path, tmp_path: Path) -> None:
     columns = ["ghi", "dni", "dhi", "temp_air", "relative_humidity"]
     frame = data[columns].assign(pressure=data["pressure"] * 100.0, longwave_down=data["lwd"])
     weather, measured_hours = measured(
-        frame, tmp_path / "payerne.csv", latitude=46.815, longitude=6.944, elevation=491.0
+        frame, tmp_path / "payerne.csv", "Europe/Zurich", latitude=46.815, longitude=6.944, elevation=491.0
     )
     error = weather.longwave_down - measured_hours
     night = weather.zenith > 90.0
@@ -84,7 +82,7 @@ def test_model_on_alamosa(samples: Path, tmp_path: Path) -> None:
         pressure=data["pressure"] * 100.0, longwave_down=data["dw_ir"], wind_speed=data["wind_speed"]
     )
     weather, measured_hours = measured(
-        frame, tmp_path / "alamosa.csv", latitude=37.70, longitude=-105.92, elevation=2317.0
+        frame, tmp_path / "alamosa.csv", "America/Denver", latitude=37.70, longitude=-105.92, elevation=2317.0
     )
     error = weather.longwave_down - measured_hours
     assert np.sqrt(np.nanmean(error**2)) <= 16.0
@@ -95,7 +93,7 @@ def test_better_than_the_book_and_than_one_emissivity(samples: Path, tmp_path: P
     data, _ = pvlib.iotools.read_bsrn(samples / "bsrn-pay0616.dat.gz")
     frame = data[["ghi", "temp_air", "relative_humidity"]].assign(longwave_down=data["lwd"])
     weather, hours = measured(
-        frame, tmp_path / "payerne.csv", latitude=46.815, longitude=6.944, elevation=491.0
+        frame, tmp_path / "payerne.csv", "Europe/Zurich", latitude=46.815, longitude=6.944, elevation=491.0
     )
     black = 5.670374e-8 * (weather.temp_air + 273.15) ** 4
     cloud, _ = sky.cloudiness(weather.ghi, weather.ghi_clear, weather.zenith, 3600.0)
