@@ -219,7 +219,7 @@ def _house() -> House:
     )
 
 
-def _case(weather: Weather, covering: Covering, light: Light, sky: Any) -> HeatCase:
+def _case(weather: Weather, covering: Covering, light: Light, sky: Any, lai: float) -> HeatCase:
     hours = len(weather)
     full = np.ones(hours)
     gain = SolarGain(
@@ -232,7 +232,7 @@ def _case(weather: Weather, covering: Covering, light: Light, sky: Any) -> HeatC
     return HeatCase(
         Outside(3600.0, weather.temp_air, weather.vapour_pressure, weather.pressure, weather.wind_speed,
                 sky, weather.zenith < 90),
-        _shell(), heat, (), CropHeat(3 * full, 0.2 * full, np.full(T, 0.97), 1.0, 1.2 * full), make_ground(),
+        _shell(), heat, (), CropHeat(lai * full, 0.2 * full, np.full(T, 0.97), 1.0, 1.2 * full), make_ground(),
         Climate(18 * full, 25 * full, 88 * full, np.zeros((0, hours)), -np.inf * full, 5 * full),
         Heating(np.inf, 0.051, 2.5, 90.0), gain, gain,
     )  # fmt: skip
@@ -321,25 +321,34 @@ def make_study(fake: tuple[Fake, ...], units: str = "si", title: str = "Made-up 
     return Study(keys, plans, Path("."), "made-up.toml", hashlib.sha256(text.encode()).hexdigest(), text)
 
 
-def make_run(fake: tuple[Fake, ...] | None = None, units: str = "si", title: str = "Made-up study") -> Run:
-    """Return a whole made-up run."""
+def make_run(
+    fake: tuple[Fake, ...] | None = None,
+    units: str = "si",
+    title: str = "Made-up study",
+    months: tuple[int, ...] = tuple(range(1, 13)),
+    lai: float = 3.0,
+) -> Run:
+    """Return a whole made-up run that reports some months of its year."""
     fake = fakes(4) if fake is None else fake
     weather = make_weather()
+    hours = np.flatnonzero(np.isin(weather.time.astype("datetime64[M]").astype(int) % 12 + 1, months))
+    time = weather.time[hours]
     study = make_study(fake, units, title)
     sun = SunBands(
         SHARES[:, None] * weather.dni, SHARES[:, None] * weather.dhi, np.full(8760, 4.6), np.full(8760, 4.5)
     )
-    days, first_day = groups(weather.time, "D")
-    months, first_month = groups(weather.time, "M")
+    days, first_day = groups(time, "D")
+    labels, first_month = groups(time, "M")
     sky = np.array([0.2, 0.3, 0.5])[:, None] * weather.longwave_down
     done = []
     for f, plan in zip(fake, study.plans, strict=True):
         covering = make_covering(f)
         light = _light(weather, f)
         heat = _heat(weather, f, light, (f.layers, 8760))
-        case = _case(weather, covering, light, sky)
+        case = _case(weather, covering, light, sky, lai)
         night = make_night(1.1 * float(heat.heat_delivered.max()))
-        hourly = hourly_columns(weather, sun, light, case, heat)
+        whole = hourly_columns(weather, sun, light, case, heat)
+        hourly = {name: values[hours] for name, values in whole.items()}
         done.append(
             CandidateRun(
                 plan=plan, covering=covering, screens=(), leaf=make_leaf(), ground=make_ground(),
@@ -347,12 +356,12 @@ def make_run(fake: tuple[Fake, ...] | None = None, units: str = "si", title: str
                 shell=_shell(), transmission=_transmission(weather, f), light=light, heat=heat, case=case,
                 lai=case.crop.lai, hourly=hourly, daily=by_group(hourly, first_day, 3600.0),
                 monthly=by_group(hourly, first_month, 3600.0),
-                closures=closures(weather, hourly, light, heat),
+                closures=closures(weather, whole, light, heat),
                 sizing=make_sizing(weather, heat, night), design=night,
             )
         )  # fmt: skip
     return Run(
-        study=study, weather=weather, sun=sun, hours=np.arange(8760), time=weather.time, days=days,
-        months=tuple(str(m) for m in months), candidates=tuple(done), wall_s={"weather": 0.1, "heat": 0.3},
+        study=study, weather=weather, sun=sun, hours=hours, time=time, days=days,
+        months=tuple(str(m) for m in labels), candidates=tuple(done), wall_s={"weather": 0.1, "heat": 0.3},
         versions={"python": "3.11", "canopy-budget": "0.1.0"}, weather_sha256="0" * 64,
     )  # fmt: skip

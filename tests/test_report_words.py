@@ -1,0 +1,204 @@
+"""Numbers in words: units against NIST SP 811, comparisons, periods, nights, who is beaten."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from canopy.run import Run
+from reports import sentences as say
+from reports.display import Display, number, percent
+from reports.figures import (
+    COLOURS,
+    FAINT,
+    INK,
+    PAPER,
+    QUIET,
+    TO_BARS,
+    TO_COVER,
+    TO_CROP,
+    TO_GROUND,
+    TO_OUT,
+    TO_SCREEN,
+    candidate_marks,
+    month_labels,
+)
+from reports.figures_climate import AIR_OUT, HUMID, INSIDE, MEAN
+from reports.figures_crop import SHADED, SUNLIT
+from reports.figures_heat import FLOWS
+from reports.nights import find_nights, night_pattern
+from reports.summary import beaten, house_differences, summaries
+from reports.terminal import plain, result_table
+from tests.reportcase import Fake, fakes, make_run
+
+
+@pytest.fixture(scope="module")
+def run() -> Run:
+    return make_run()
+
+
+# NIST SP 811 (2008), appendix B.8: SI value of one US unit
+@pytest.mark.parametrize(
+    ("kind", "si", "per_us"),
+    [
+        ("W/m2", 3.154591, 1.0),  # Btu_IT/(ft2 h)
+        ("W/m2/K", 5.678263, 1.0),  # Btu_IT/(h ft2 °F)
+        ("kWh/m2", 11.35653e6 / 3.6e6, 1.0),  # 1000 Btu_IT/ft2 = 1.135653e7 J/m2
+        ("kW", 0.2930711, 1.0),  # 1000 Btu_IT/h
+        ("m/s", 0.44704, 1.0),  # mile per hour
+        ("kg/m2", 4.882428, 1.0),  # lb/ft2
+        ("m", 0.3048, 1.0),
+        ("m2", 0.09290304, 1.0),
+        ("degC", 37.0, 98.6),
+        ("K", 5.0, 9.0),
+    ],
+)
+def test_us_units_follow_nist(kind: str, si: float, per_us: float) -> None:
+    assert float(Display("us").convert(si, kind)) == pytest.approx(per_us, rel=2e-6)
+    assert float(Display("si").convert(si, kind)) == si
+
+
+def test_numbers_are_written_for_readers() -> None:
+    assert number(1234567.8) == "1\u202f234\u202f568"
+    assert number(-0.04, 1) == "0.0"
+    assert number(-3.26, 1) == "−3.3"
+    assert number(float("nan")) == number(float("inf")) == "–"
+    assert percent(0.123, 1) == "12.3\u202f%"
+
+
+@given(st.floats(-1e9, 1e9), st.integers(0, 4))
+def test_a_written_number_reads_back(value: float, digits: int) -> None:
+    back = float(number(value, digits).replace("\u202f", "").replace("−", "-"))
+    assert back == pytest.approx(value, abs=0.5001 * 10.0**-digits)
+
+
+def test_changes_in_words() -> None:
+    assert say.change(88.0, 100.0, "heat") == "12\u202f% less heat"
+    assert say.change(103.1, 100.0, "light") == "3.1\u202f% more light"
+    assert say.change(100.3, 100.0, "heat") == "the same heat"
+    assert "cannot be compared" in say.change(3.0, 0.0, "heat")
+
+
+def test_the_answer_names_least_heat_and_most_light(run: Run) -> None:
+    rows = summaries(run)
+    first, second = say.answer(run, rows, Display("si"))
+    cool, bright = rows[-1], rows[0]
+    assert cool.name in first
+    assert f"{cool.heat_kwh:.0f}" in first
+    assert bright.name in second
+    assert f"{100 * bright.inside_mol / bright.outside_mol:.0f}\u202f%" in second
+
+
+def test_totals_are_those_of_the_days(run: Run) -> None:
+    for row, one in zip(summaries(run), run.candidates, strict=True):
+        assert row.heat_kwh == pytest.approx(one.daily["heat_delivered_kwh_m2"].sum())
+        assert row.inside_mol == pytest.approx(one.daily["inside_par_mol_m2"].sum())
+        assert row.peak_w == one.hourly["heat_delivered_w_m2"].max()
+
+
+def test_who_is_beaten_on_all_counts() -> None:
+    rows = summaries(make_run((Fake("good", 0.7, 4.0), Fake("bad", 0.6, 6.0), Fake("bright", 0.8, 6.5))))
+    assert [(w.name, b.name) for w, b in beaten(rows)] == [("bad", "good")]
+    assert any("bad gives less light than good" in line for line in say.verdicts(rows))
+
+
+def test_house_differences_are_said_with_both_values(run: Run) -> None:
+    found = house_differences(run, 1)
+    assert [key for key, _, _ in found] == ["house.ridge_azimuth", "house.leakage_per_hour"]
+    words = say.difference_words(found, "single glass")
+    assert "direction of the ridge 90 instead of 0" in words
+    assert "leakage per hour 0.7 instead of as usual" in words
+    assert house_differences(run, 2) == []
+
+
+def test_periods_in_words(run: Run) -> None:
+    assert say.period(run) == "a year"
+    assert say.period(make_run(fakes(1), months=(4, 5))) == "from 1 April to 31 May"
+    assert say.period(make_run(fakes(1), months=(1, 2, 11, 12))) == "from 1 November to 28 February"
+    assert say.dark_words(run, short=True) == "Dec, Jan, Feb"
+
+
+def test_months_of_several_years_carry_their_year() -> None:
+    assert month_labels(("1990-01", "1990-02")) == ["Jan", "Feb"]
+    assert month_labels(("2019-12", "2020-01")) == ["Dec 19", "Jan 20"]
+
+
+def test_nights_are_parted_by_how_clear_they_are(run: Run) -> None:
+    nights = find_nights(run)
+    one = run.candidates[0]
+    pattern = night_pattern(one, nights)
+    assert pattern is not None
+    assert pattern.labels == tuple(f"{h:02d}" for h in (*range(18, 24), *range(6)))
+    assert not (nights.clear & nights.cloudy).any()
+    assert (nights.clear | nights.cloudy | nights.dark == nights.dark).all()
+    weather = run.weather
+    black = 5.670374e-8 * (weather.temp_air + 273.15) ** 4 - weather.longwave_down
+    assert black[nights.clear].mean() > black[nights.cloudy].mean()
+    at = nights.clear & (nights.hour == 3)
+    expected = one.hourly["through_loss_w_m2"][at].mean()
+    assert pattern.clear_through[pattern.labels.index("03")] == pytest.approx(expected)
+
+
+def test_a_polar_day_has_no_nights(run: Run) -> None:
+    one = run.candidates[0]
+    bright = replace(one.case, outside=replace(one.case.outside, sun_up=np.ones(8760, bool)))
+    polar = replace(run, candidates=(replace(one, case=bright),))
+    nights = find_nights(polar)
+    assert not nights.dark.any()
+    assert night_pattern(polar.candidates[0], nights) is None
+
+
+def _luminance(colour: str) -> float:
+    parts = [int(colour[k : k + 2], 16) / 255 for k in (1, 3, 5)]
+    r, g, b = (c / 12.92 if c <= 0.04045 else ((c + 0.055) / 1.055) ** 2.4 for c in parts)
+    return 0.2126 * r + 0.7152 * g + 0.0722 * b
+
+
+def _contrast(a: str, b: str) -> float:
+    high, low = sorted((_luminance(a), _luminance(b)), reverse=True)
+    return (high + 0.05) / (low + 0.05)
+
+
+def test_colours_stand_out_from_the_paper() -> None:
+    # WCAG 2.2: success criterion 1.4.11 asks 3:1 for graphics, 1.4.3 asks 4.5:1 for text
+    marks = [mark for mark, _, _ in FLOWS]
+    marks += [
+        TO_CROP,
+        TO_GROUND,
+        TO_COVER,
+        TO_SCREEN,
+        TO_BARS,
+        TO_OUT,
+        INSIDE,
+        MEAN,
+        AIR_OUT,
+        HUMID,
+        SUNLIT,
+        SHADED,
+    ]
+    weak = [c for c in (*COLOURS, *(m.colour for m in marks)) if _contrast(c, PAPER) < 3.0]
+    assert weak == []
+    assert _contrast(INK, PAPER) > 7
+    assert _contrast(QUIET, PAPER) > 4.5
+    assert _contrast(FAINT, PAPER) < 2  # grid lines stay in the background
+
+
+def test_candidates_differ_in_more_than_colour() -> None:
+    marks = candidate_marks([f"c{k}" for k in range(24)])
+    assert len({(m.colour, m.dash, m.symbol) for m in marks}) == 24
+    assert len({m.symbol for m in marks[:8]}) == 8
+    paths = [(m.colour, m.pattern) for m, _, _ in FLOWS]
+    assert len(set(paths)) == len(paths)
+
+
+def test_the_terminal_table_fits_and_carries_no_control_characters(run: Run) -> None:
+    odd = replace(run.candidates[0].plan, name="evil \x1b[31m red " + "x" * 80)
+    text = result_table(replace(run, candidates=(replace(run.candidates[0], plan=odd), *run.candidates[1:])))
+    assert "\x1b" not in text
+    assert max(map(len, text.splitlines())) <= 120
+    assert text.splitlines()[0].endswith("totals a year")
+    assert plain("a" * 50, 10) == "a" * 9 + "…"
