@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import shutil
 import time
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from typing import TextIO
 
 from canopy.run import Run
@@ -24,11 +24,13 @@ def plain(text: str, width: int) -> str:
 
 def _lines(head: Sequence[str], units: Sequence[str], rows: Sequence[Sequence[str]]) -> list[str]:
     widths = [max(map(len, column)) for column in zip(head, units, *rows, strict=True)]
-    pads: list[Callable[[str, int], str]] = [str.ljust] + [str.rjust] * (len(head) - 1)
-    return [
-        GAP.join(pad(cell, width) for pad, cell, width in zip(pads, row, widths, strict=True)).rstrip()
-        for row in (head, units, ["─" * width for width in widths], *rows)
-    ]
+    rule = ["─" * width for width in widths]
+    lines = []
+    for row in (head, units, rule, *rows):
+        cells = [row[0].ljust(widths[0])]
+        cells += [cell.rjust(width) for cell, width in zip(row[1:], widths[1:], strict=True)]
+        lines.append(GAP.join(cells).rstrip())
+    return lines
 
 
 def result_table(run: Run) -> str:

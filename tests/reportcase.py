@@ -232,7 +232,8 @@ def _case(weather: Weather, covering: Covering, light: Light, sky: Any, lai: flo
     return HeatCase(
         Outside(3600.0, weather.temp_air, weather.vapour_pressure, weather.pressure, weather.wind_speed,
                 sky, weather.zenith < 90),
-        _shell(), heat, (), CropHeat(lai * full, 0.2 * full, np.full(T, 0.97), 1.0, 1.2 * full), make_ground(),
+        _shell(), heat, (), CropHeat(lai * full, 0.2 * full, np.full(T, 0.97), 1.0, 1.2 * full),
+        make_ground(),
         Climate(18 * full, 25 * full, 88 * full, np.zeros((0, hours)), -np.inf * full, 5 * full),
         Heating(np.inf, 0.051, 2.5, 90.0), gain, gain,
     )  # fmt: skip

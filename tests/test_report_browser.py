@@ -1,4 +1,4 @@
-"""The page in headless Chromium: no console message, no request, figures drawn, accessible, narrow and wide."""
+"""The page in headless Chromium: no console message, no request, figures drawn, accessible, two widths."""
 
 from __future__ import annotations
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 from html.parser import HTMLParser
+from itertools import pairwise
 
 import pytest
 
@@ -80,7 +81,7 @@ def test_headings_step_down_one_level_at_a_time(page: str) -> None:
     levels = [level for level, _ in read(page).headings]
     assert levels[0] == 1
     assert levels.count(1) == 1
-    assert all(b - a <= 1 for a, b in zip(levels, levels[1:], strict=False))
+    assert all(b - a <= 1 for a, b in pairwise(levels))
 
 
 def test_nothing_is_fetched_and_ids_are_unique(page: str) -> None:
