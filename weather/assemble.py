@@ -129,7 +129,7 @@ def _labelled(request: WeatherRequest, raw: RawWeather, place: Place) -> RawWeat
     """Return the record with the declared label, or for a user's own record the one that noon speaks for."""
     if request.label is not None:
         return replace(raw, label=request.label, sun_offset_s=None)
-    if raw.format != "logger":
+    if raw.format != "logger" or raw.step_s < 900.0:  # half a short step does not matter: end of the step
         return raw
     start = replace(raw, label="start")
     off = [
@@ -181,7 +181,10 @@ def finish(
     model = sky_longwave(air.vapour, air.temp, cloud, solar_time(utc, place.longitude))
     modelled = ~np.isfinite(longwave) if request.longwave != "model" else np.ones(n, dtype=bool)
     if modelled.any():
-        text = f"long-wave from the sky computed in {int(modelled.sum())} hours"
+        text = (
+            f"long-wave from the sky computed in {int(modelled.sum())} hours (Prata 1996, clouds by "
+            "clearness, night inversion; RMSE 10-13 W/m2 on measured records)"
+        )
         findings += (Finding("longwave", "note", text, int(modelled.sum())),)
     if polar.any() and known is None and modelled.any():
         text = f"{int(polar.sum())} hours of polar night have no sun to tell clouds by: mean cloudiness taken"

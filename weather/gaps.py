@@ -59,7 +59,8 @@ def fill(
         )
     result = _interpolated(values, gap, np.arange(len(values)), periodic)
     long_rows = np.zeros(len(values), dtype=bool)
-    for j in np.flatnonzero(length > SHORT_H):
+    edge = (start == 0) | (start + length == len(values))  # nothing on one side to draw a line to
+    for j in np.flatnonzero((length > SHORT_H) | (edge & (not periodic))):
         long_rows[start[j] : start[j] + length[j]] = True
     if long_rows.any():
         result[long_rows] = _between_days(values, gap, periodic)[long_rows]
