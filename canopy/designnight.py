@@ -179,12 +179,16 @@ def _other_lines(night: HeatCase, result: HeatResult) -> list[tuple[str, float, 
     difference = float(result.temp_air[-1] - night.outside.temp_air[-1])
     changes = float(result.air_changes_per_h[-1])
     dry = AIR_DENSITY * CP_AIR / 3600.0 * changes * shell.mean_height_m * difference
+    leak = f"{changes:.2f}/h x {shell.mean_height_m:.2f} m"
+    if np.any(night.climate.screen_drawn > 0.0):
+        leak += "; it leaves from above the screen, where air is colder and drier than in the house"
+    else:
+        leak += f" x .335 Wh/m3K x {difference:.1f} K = {dry:.1f} dry, the rest as vapour"
     return [
         (
             "leakage",
             float(result.air_change_loss[-1]),
-            f"{changes:.2f}/h x {shell.mean_height_m:.2f} m x .335 Wh/m3K x {difference:.1f} K "
-            f"= {dry:.1f} dry, the rest as vapour",
+            leak,
         ),
         (
             "humidity: venting to stay below the limit",
