@@ -14,8 +14,9 @@ from weather.labels import noon_offset_h, settle
 from weather.quality import closure, limits, missing_codes, plausibility
 from weather.radiation import SkySun, Solar, complete
 from weather.raw import RawWeather
-from weather.record import Bools, Finding, Site, Times, Weather
+from weather.record import Finding, Site, Times, Weather
 from weather.request import WeatherRequest
+from weather.season import season
 from weather.site import check_coordinates, make_site, solar_time, standard_offset_h, zone_of_offset
 from weather.sky import (
     ClearSky,
@@ -221,27 +222,3 @@ def finish(
         findings=findings,
         design=raw.design,
     )
-
-
-def season(time: Times, first_day: str | None, last_day: str | None) -> Bools:
-    """Return which hours lie between two days of the year, both included, (N,); may wrap."""
-    days = time.astype("datetime64[D]")
-    month = days.astype("datetime64[M]").astype(np.int64) % 12 + 1
-    key = month * 100 + (days - days.astype("datetime64[M]").astype("datetime64[D]")).astype(np.int64) + 1
-    first = _day_key(first_day, "first_day", 101)
-    last = _day_key(last_day, "last_day", 1231)
-    inside = (key >= first) & (key <= last) if first <= last else (key >= first) | (key <= last)
-    return np.asarray(inside)
-
-
-def _day_key(text: str | None, name: str, default: int) -> int:
-    if text is None:
-        return default
-    try:
-        month, day = text.split("-")
-        np.datetime64(f"2000-{int(month):02d}-{int(day):02d}")
-        return int(month) * 100 + int(day)
-    except (ValueError, TypeError):
-        raise UserError(
-            f'weather -> {name}: "{text}" is not a day, allowed "MM-DD" such as "10-15"'
-        ) from None

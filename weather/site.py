@@ -65,9 +65,10 @@ def check_coordinates(latitude: float, longitude: float, offset_h: float | None 
     if offset_h is None:
         return
     off = _off_longitude_h(longitude, offset_h)
-    if abs(off) <= ZONE_SLACK_H:
+    turned = abs(_off_longitude_h(latitude, offset_h))
+    if abs(off) <= ZONE_SLACK_H and not (abs(off) > 2.0 and turned < 1.0 and abs(longitude) <= 90.0):
         return
-    if abs(longitude) <= 90.0 and abs(_off_longitude_h(latitude, offset_h)) < 2.5:
+    if abs(longitude) <= 90.0 and turned < 2.5:
         hint = swap
     elif abs(_off_longitude_h(-longitude, offset_h)) < 2.5:
         hint = "; the sign of the longitude looks wrong (east is positive)"
