@@ -14,7 +14,14 @@ from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
 from canopy.run import Run
-from reports import sections_choice, sections_end, sections_night, sections_radiation, sections_size
+from reports import (
+    sections_choice,
+    sections_end,
+    sections_house,
+    sections_night,
+    sections_radiation,
+    sections_size,
+)
 from reports.blocks import Section
 from reports.display import Display
 from reports.figures import HATCHES, SYMBOL_SIGNS, marks_of
@@ -52,6 +59,7 @@ def sections_of(run: Run) -> tuple[Section, ...]:
         sections_night.nights(run, rows, show),
         sections_size.size(run, rows, show),
         sections_radiation.bands(run, rows, show),
+        sections_house.house_light(run, rows, show),
         sections_radiation.crop(run, rows, show),
         sections_end.climate(run, rows, show),
         sections_end.inputs(run, rows, show),

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import shutil
 from collections.abc import Iterator
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
@@ -66,31 +67,42 @@ def scroll_through(page: Page) -> None:
     page.wait_for_function("[...document.querySelectorAll('.plot')].every(p => p.dataset.drawn)")
 
 
-@pytest.mark.parametrize("size", SIZES)
-def test_figures_are_drawn_as_they_come_into_view(browser: Browser, report: Path, size: str) -> None:
-    page, said = open_page(browser, report, SIZES[size])
-    total = page.locator(".plot").count()
-    assert page.locator(".plot[data-drawn]").count() < total
+@dataclass
+class Opened:
+    """A page that was scrolled through, how many figures were drawn at first, and what the browser said."""
+
+    page: Page
+    width: int
+    at_first: int
+    said: list[str]
+
+
+@pytest.fixture(scope="module", params=SIZES)
+def opened(request: pytest.FixtureRequest, browser: Browser, report: Path) -> Iterator[Opened]:
+    width = SIZES[request.param]
+    page, said = open_page(browser, report, width)
+    at_first = page.locator(".plot[data-drawn]").count()
     scroll_through(page)
-    assert page.locator(".plot .main-svg").count() >= total
+    yield Opened(page, width, at_first, said)
     assert said == []
-    wide = page.evaluate("document.documentElement.scrollWidth")
-    assert wide <= SIZES[size]
     page.close()
 
 
-@pytest.mark.parametrize("size", SIZES)
-def test_the_page_is_accessible(browser: Browser, report: Path, size: str) -> None:
-    page, _ = open_page(browser, report, SIZES[size])
-    scroll_through(page)
-    found: Any = Axe().run(page)
+def test_figures_are_drawn_as_they_come_into_view(opened: Opened) -> None:
+    total = opened.page.locator(".plot").count()
+    assert opened.at_first < total
+    assert opened.page.locator(".plot .main-svg").count() >= total
+    assert opened.said == []
+    assert opened.page.evaluate("document.documentElement.scrollWidth") <= opened.width
+
+
+def test_the_page_is_accessible(opened: Opened) -> None:
+    found: Any = Axe().run(opened.page)
     assert found.response["violations"] == [], found.generate_report()
-    page.close()
 
 
-def test_the_reader_chooses_the_candidate_shown_in_detail(browser: Browser, report: Path) -> None:
-    page, said = open_page(browser, report, 1400)
-    scroll_through(page)
+def test_the_reader_chooses_the_candidate_shown_in_detail(opened: Opened) -> None:
+    page = opened.page
     before = page.evaluate("document.getElementById('f-bands').data[0].x")
     page.select_option("#c-bands", "3")
     assert {s.input_value() for s in page.locator("select.choose").all()} == {"3"}
@@ -98,13 +110,11 @@ def test_the_reader_chooses_the_candidate_shown_in_detail(browser: Browser, repo
     assert page.locator("#bands .one:visible").count() == 1
     assert "double infrared film" in page.locator("#bands .one:visible").inner_text()
     assert page.evaluate("document.getElementById('f-bands').data[0].x") != before
-    assert said == []
-    page.close()
+    assert opened.said == []
 
 
-def test_a_key_hides_and_shows_its_line(browser: Browser, report: Path) -> None:
-    page, said = open_page(browser, report, 1400)
-    scroll_through(page)
+def test_a_key_hides_and_shows_its_line(opened: Opened) -> None:
+    page = opened.page
     lines = "[...document.getElementById('f-dli').data].filter(t => t.visible === true).length"
     assert page.evaluate(lines) == 6
     key = page.locator("figure:has(#f-dli) .toggle").nth(2)
@@ -113,8 +123,7 @@ def test_a_key_hides_and_shows_its_line(browser: Browser, report: Path) -> None:
     assert page.evaluate(lines) == 5
     key.click()
     assert page.evaluate(lines) == 6
-    assert said == []
-    page.close()
+    assert opened.said == []
 
 
 def test_printing_draws_every_figure_and_opens_every_table(browser: Browser, report: Path) -> None:
