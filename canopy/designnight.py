@@ -16,8 +16,8 @@ from numpy.typing import NDArray
 from canopy.designoutside import DesignOutside
 from canopy.handcheck import HandCheck, hand_check
 from canopy.heatcase import Climate, HeatCase, HeatResult, Outside, SolarGain
-from canopy.recovery import AIR_DENSITY, Recovery, recovery
-from weather.constants import CP_AIR, STEFAN_BOLTZMANN, ZERO_C_K
+from canopy.recovery import Recovery, recovery
+from weather.constants import CP_AIR, GAS_CONSTANT, MOLAR_MASS_AIR, STEFAN_BOLTZMANN, ZERO_C_K
 
 Floats = NDArray[np.float64]
 Solver = Callable[[HeatCase], HeatResult]
@@ -178,12 +178,15 @@ def _other_lines(night: HeatCase, result: HeatResult) -> list[tuple[str, float, 
     shell = night.shell
     difference = float(result.temp_air[-1] - night.outside.temp_air[-1])
     changes = float(result.air_changes_per_h[-1])
-    dry = AIR_DENSITY * CP_AIR / 3600.0 * changes * shell.mean_height_m * difference
+    mean_k = ZERO_C_K + 0.5 * float(result.temp_air[-1] + night.outside.temp_air[-1])
+    density = float(night.outside.pressure[-1]) * MOLAR_MASS_AIR / (GAS_CONSTANT * mean_k)
+    per_m3 = density * CP_AIR / 3600.0  # Wh m-3 K-1
+    dry = per_m3 * changes * shell.mean_height_m * difference
     leak = f"{changes:.2f}/h x {shell.mean_height_m:.2f} m"
     if np.any(night.climate.screen_drawn > 0.0):
         leak += "; it leaves from above the screen, where air is colder and drier than in the house"
     else:
-        leak += f" x .335 Wh/m3K x {difference:.1f} K = {dry:.1f} dry, the rest as vapour"
+        leak += f" x {per_m3:.3f} Wh/m3K x {difference:.1f} K = {dry:.1f} dry, the rest as vapour"
     return [
         (
             "leakage",

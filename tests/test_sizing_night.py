@@ -1,0 +1,216 @@
+"""The design night against a hand calculation, its own components, and the year's hours."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from scipy.optimize import fsolve
+
+from canopy.balance import solve
+from canopy.designnight import DesignNight, NightLoad, design_night, night_case
+from canopy.designoutside import DesignOutside, percentile_temperature
+from canopy.heatcase import HeatCase
+from canopy.sizing import rerun, size
+from canopy.skybands import sky_bands
+from tests.sizingcase import energy_screen, twin_film, winter_case
+
+SIGMA = 5.670374e-8
+
+
+def outside(case: HeatCase, temp: float = -12.0, wind: float = 4.0, sky: float = 190.0) -> DesignOutside:
+    """Return a clear design night; humidity 85 %."""
+    vapour = np.array([0.85 * 611.0 * np.exp(22.5 * temp / (273.0 + temp))])
+    long_wave = np.array([sky])
+    return DesignOutside(
+        temp, "tests", temp, wind, "tests", 85.0, float(vapour[0]), 98000.0, sky,
+        sky_bands(long_wave, np.array([temp]), vapour)[:, 0],
+        np.argsort(case.outside.temp_air, kind="stable")[:20],
+    )  # fmt: skip
+
+
+def part(load: NightLoad, words: str) -> float:
+    """Return one component."""
+    return next(p.w_m2 for p in load.components if words in p.name)
+
+
+@pytest.fixture(scope="module")
+def bare() -> HeatCase:
+    """An empty, dry glasshouse."""
+    case = winter_case(lai=0.0)
+    return replace(case, ground=replace(case.ground, wetness=0.0))
+
+
+@pytest.fixture(scope="module")
+def night(bare: HeatCase) -> DesignNight:
+    found = design_night(bare, outside(bare))
+    assert found is not None
+    return found
+
+
+def test_by_hand(bare: HeatCase, night: DesignNight) -> None:
+    """Glass, floor and pipe temperature from what comes and goes, then each loss with a pocket calculator."""
+    house, inside, cold, kelvin = bare.shell, night.inside_c, -12.0, 273.15
+    area = house.roof_ratio + house.wall_ratio
+    view = house.roof_ratio * house.roof_sky_view + house.wall_ratio * house.wall_sky_view
+    wind = 4.0 * house.wind_factor
+    leak = 1.0 * house.mean_height_m * 1.237 * 1006.0 / 3600.0  # W/m2K: dry air of 3 °C at 980 hPa
+    drive = (0.000145 * (inside - cold) + 0.000174 * wind**2) / (0.000145 * 20.0 + 0.000174 * 16.0)
+    leak *= np.sqrt(drive) * (inside - cold)  # ASHRAE basic model: Cs dT + Cw v2, one storey, class 3
+    foundation = 0.8 * house.perimeter_per_floor * (inside - cold)
+    pipe = np.pi * 0.051 * 2.5  # m2 of pipe per m2 floor
+
+    def black(t: float) -> float:
+        return float(SIGMA * (t + kelvin) ** 4)
+
+    def leaving(glass_c: float) -> tuple[float, float, float]:
+        convection = area * (2.8 + 1.2 * wind) * (glass_c - cold)  # Bot 1983: multi-span glass below 4 m/s
+        sky = view * 0.837 * (black(glass_c) - 190.0)
+        return convection, sky, (area - view) * 0.837 * (black(glass_c) - black(cold))
+
+    def unbalanced(t: np.ndarray) -> list[float]:
+        glass_c, floor_c, pipe_c = (float(x) for x in t)
+        # De Zwart 1996: roof 1.70 dT^(1/3) cos(slope)^(-2/3), floor 1.70 dT^(1/3);
+        # pipe 1.32 (dT/D)^.25 (McAdams 1954)
+        roof = area * 1.70 * np.cos(np.radians(24.0)) ** (-2 / 3) * np.cbrt(inside - glass_c) ** 4
+        floor = 1.70 * np.cbrt(floor_c - inside) ** 4
+        warm = pipe * 1.32 * ((pipe_c - inside) / 0.051) ** 0.25 * (pipe_c - inside)
+        # half the pipe looks up, half down; floor and glass see each other past the pipes
+        to_glass = 0.5 * pipe * 0.88 * (black(pipe_c) - black(glass_c)) * 0.9
+        to_floor = 0.5 * pipe * 0.88 * (black(pipe_c) - black(floor_c)) * 0.93
+        exchange = (1.0 - 0.5 * pipe) / (1.0 / 0.93 + (1.0 / area) * (1.0 / 0.837 - 1.0))
+        across = exchange * (black(floor_c) - black(glass_c))
+        return [
+            roof + across + to_glass - sum(leaving(glass_c)),
+            to_floor - across - floor,
+            warm + floor - roof - leak - foundation,
+        ]
+
+    pane, _, pipe_c = fsolve(unbalanced, [0.0, 20.0, 70.0])
+    convection, sky, ground = leaving(pane)
+    total = convection + sky + ground + leak + foundation
+    assert night.open.covering_outer_c == pytest.approx(pane, abs=0.5)
+    assert night.open.pipe_c == pytest.approx(pipe_c, abs=2.0)
+    assert part(night.open, "convection") == pytest.approx(convection, rel=0.04)
+    assert part(night.open, "outer face to the sky") == pytest.approx(sky, rel=0.03)
+    assert part(night.open, "neighbours") == pytest.approx(ground, rel=0.05)
+    assert part(night.open, "leakage") == pytest.approx(leak, rel=0.04)
+    assert part(night.open, "perimeter") == pytest.approx(foundation, rel=1e-6)
+    assert night.open.total_w_m2 == pytest.approx(total, rel=0.02)
+    # and the paper calculation, which knows no temperatures at all
+    assert night.hand.total_w_m2 == pytest.approx(night.open.total_w_m2, rel=0.15)
+
+
+def test_components_add_up_and_screens_help() -> None:
+    case = winter_case(screens=(energy_screen(),))
+    found = design_night(case, outside(case))
+    assert found is not None
+    assert found.drawn is not None
+    for load in (found.open, found.drawn):
+        assert load.gap_w_m2 == pytest.approx(0.0, abs=0.01)
+        assert load.total_kw == pytest.approx(load.total_w_m2 * 4.8)
+        assert sum(p.kw for p in load.components) == pytest.approx(load.total_kw, abs=0.05)
+    # a drawn tight film screen saves 25-35 % (J. Agric. Meteorol. 1979), an infrared-tight one up to 60 %
+    assert 0.35 < found.drawn.total_w_m2 / found.open.total_w_m2 < 0.80
+    assert found.design is found.drawn
+    assert found.hold_open_c is not None
+    # an open house needs in proportion to the difference: the design heat holds it down to there
+    share = (found.inside_c - found.hold_open_c) / (found.inside_c - -12.0)
+    assert share == pytest.approx(found.design_w_m2 / found.open.total_w_m2)
+
+
+def test_design_night_is_steady_and_dry() -> None:
+    case = winter_case(covering=twin_film())
+    row = 0
+    cold = outside(case)
+    result = solve(night_case(case, cold, row, 18.0, np.zeros(0)))
+    for name in ("air_store", "vapour_store", "crop_store", "pipe_store", "covering_store"):
+        assert np.abs(getattr(result, name)).max() < 1e-3, name
+    assert np.ptp(result.heat_delivered) < 1e-3
+    assert np.abs(result.soil_store + result.deep_loss).max() < 0.01
+    assert result.temp_air == pytest.approx(18.0, abs=1e-6)
+
+
+def test_colder_windier_clearer_needs_more() -> None:
+    case = winter_case()
+    usual = design_night(case, outside(case))
+    assert usual is not None
+    for other in (outside(case, temp=-15.0), outside(case, wind=8.0), outside(case, sky=170.0)):
+        more = design_night(case, other)
+        assert more is not None
+        assert more.design_w_m2 > usual.design_w_m2 + 1.0
+
+
+def test_recovery_by_hand() -> None:
+    case = winter_case()
+    found = design_night(case, outside(case))
+    assert found is not None
+    air = 1.2 * 1006.0 * 5.39  # J m-2 K-1
+    crop = 2.0 * 1.2 * 4186.0
+    bore = 0.051 - 2 * 0.00225  # 51 mm steel tube, 2.25 mm wall
+    steel = np.pi / 4 * (0.051**2 - bore**2) * 7850.0 * 480.0
+    pipes = 2.5 * (np.pi / 4 * bore**2 * 1000.0 * 4186.0 + steel)
+    glass_share = (found.open.covering_outer_c + 12.0) / (found.inside_c + 12.0)
+    cover = 8400.0 * 1.375 * glass_share
+    assert found.recovery.stores_wh_m2_k == pytest.approx((air + crop + pipes + cover) / 3600.0, rel=1e-3)
+    assert found.recovery.ramp_k_per_h == pytest.approx(1.0)  # the case's ramp
+    assert found.recovery.extra_w_m2 == pytest.approx(found.recovery.stores_wh_m2_k)
+
+
+def test_house_without_heating_has_no_design_night() -> None:
+    case = winter_case()
+    idle = replace(case, climate=replace(case.climate, heat_at=np.full(480, -np.inf)))
+    assert design_night(idle, outside(idle)) is None
+    assert (
+        design_night(replace(case, heating=replace(case.heating, capacity_w_m2=0.0)), outside(case)) is None
+    )
+
+
+def test_proposed_heating_runs_again() -> None:
+    case = winter_case()
+    result = solve(case)
+    time = np.datetime64("2001-01-01T00:00:00", "s") + np.arange(480) * np.timedelta64(3600, "s")
+    peak = float(result.heat_delivered.max())
+    ample = rerun(case, result, time, peak + 1.0)
+    assert not ample.solved_again
+    assert ample.deficit_h == 0.0
+    short = rerun(case, result, time, 0.8 * peak)
+    again = solve(replace(case, heating=replace(case.heating, capacity_w_m2=0.8 * peak)))
+    assert short.solved_again
+    below = again.temp_air < case.climate.heat_at - 0.1
+    assert short.deficit_h == np.count_nonzero(below) > 0
+    assert short.deficit_kh == pytest.approx((case.climate.heat_at - again.temp_air)[below].sum())
+    assert short.lowest_air_c == again.temp_air.min() < ample.lowest_air_c
+    assert short.limited_h >= short.deficit_h * 0.5
+
+
+def test_sizing_of_the_hours() -> None:
+    case = winter_case()
+    result = solve(case)
+    time = np.datetime64("2001-01-01T00:00:00", "s") + np.arange(480) * np.timedelta64(3600, "s")
+    found_night = design_night(case, outside(case))
+    assert found_night is not None
+    sizing = size(result.heat_delivered, time, case.outside.temp_air, 4800.0, found_night, 15.0, typical=True)
+    heat = result.heat_delivered
+    assert sizing.peak_w_m2 == heat.max()
+    assert sizing.peak_at == time[heat.argmax()]
+    # 35 of 8760 h are 1.92 of these 480 h
+    falling = np.sort(heat)[::-1]
+    expected = np.interp(35 / 8760 * 480, [1, 2], falling[1:3])
+    assert sizing.load_exceeded_35_h_w_m2 == pytest.approx(expected)
+    assert sizing.annual_heat_kwh_m2 == pytest.approx(heat.sum() / 1000.0)
+    design = max(found_night.design_w_m2, sizing.load_exceeded_35_h_w_m2)
+    assert sizing.design_heat_kw == pytest.approx(design * 4.8)
+    assert sizing.boiler_kw == pytest.approx(1.15 * design * 4.8)
+    assert sizing.full_load_hours == pytest.approx(heat.sum() / design)
+    said = " ".join(sizing.explained)
+    assert "extremes are removed" in said
+    assert "percentiles are scaled" in said
+
+
+def test_percentile_temperature() -> None:
+    rng = np.random.default_rng(4)
+    temp = rng.normal(8.0, 9.0, 8760)
+    cold = percentile_temperature(temp, 35.0)
+    assert np.count_nonzero(temp < cold) == 35  # ASHRAE: 99.6 % of 8760 hours are warmer
