@@ -24,6 +24,8 @@ Solver = Callable[[HeatCase], HeatResult]
 
 NIGHT_H: Final = 24  # equal hours that follow on each other: a steady state, whatever the start
 NO_VENTING_K: Final = 15.0  # vents for temperature stay shut
+HELD_K: Final = 0.1  # the set-point counts as held within this
+MORE_PIPE: Final = 12  # steps of half as much pipe again
 NEUTRAL_SOIL: Final = 1e5  # m2 K/W under the floor: the column takes less than .001 W/m2
 
 
@@ -65,6 +67,7 @@ class DesignNight:
     recovery: Recovery
     hand: HandCheck
     hold_open_c: float | None  # outside temperature at which the design heat still holds, screens open
+    pipes_note: str = ""  # what the study's pipes lack on this night, if they lack anything
 
     @property
     def design(self) -> NightLoad:
@@ -211,6 +214,26 @@ def _other_lines(night: HeatCase, result: HeatResult) -> list[tuple[str, float, 
     ]
 
 
+def _hold(night: HeatCase, solver: Solver, inside_c: float) -> tuple[HeatCase, HeatResult, str]:
+    """Solve a night; where the pipes cannot hold the temperature, say so and go on with more of them."""
+    heating, result = night.heating, solver(night)
+    note = ""
+    if float(result.temp_air[-1]) < inside_c - HELD_K:
+        note = (
+            f"{heating.pipe_m_per_m2:g} m/m2 of pipe at {heating.flow_max_c:g} °C give "
+            f"{float(result.heat_delivered[-1]):.0f} W/m2 and hold {float(result.temp_air[-1]):.1f} °C only"
+        )
+    for _ in range(MORE_PIPE):
+        if float(result.temp_air[-1]) >= inside_c - HELD_K:
+            break
+        longer = replace(night.heating, pipe_m_per_m2=1.5 * night.heating.pipe_m_per_m2)
+        night = replace(night, heating=longer)
+        result = solver(night)
+    if note:
+        note += f"; worked out with {night.heating.pipe_m_per_m2:.1f} m/m2"
+    return night, result, note
+
+
 def _night_load(night: HeatCase, result: HeatResult, label: str) -> NightLoad:
     area_kw = night.shell.floor_area_m2 / 1000.0
     lines = _covering_lines(night, result) + _other_lines(night, result)
@@ -247,12 +270,14 @@ def design_night(
     dark = outside.coldest[~case.outside.sun_up[outside.coldest]]
     state = case.climate.screen_drawn[:, dark].max(axis=1) if len(dark) else np.zeros(len(case.screens))
     loads: list[NightLoad] = []
+    notes: list[str] = []
     bare = "open" if len(case.screens) else "none"
     for drawn, label in ((0.0 * state, bare), (state, "drawn")):
         if label == "drawn" and not np.any(drawn > 0.0):
             continue
-        night = night_case(case, outside, row, inside, drawn)
-        loads.append(_night_load(night, solver(night), label))
+        night, result, note = _hold(night_case(case, outside, row, inside, drawn), solver, inside)
+        loads.append(_night_load(night, result, label))
+        notes += [f"screens {label}: {note}"] if note else []
     opened, shut = loads[0], (loads[1] if len(loads) > 1 else None)
     hold = None
     if shut is not None and opened.total_w_m2 > 0.0:
@@ -266,4 +291,5 @@ def design_night(
         recovery=recovery(case, _cover_c(shut or opened), outside.temp_c, row, inside),
         hand=hand_check(case.covering, case.shell, inside, outside.temp_c, outside.sky_w_m2, u_value),
         hold_open_c=hold,
+        pipes_note="; ".join(notes),
     )

@@ -15,10 +15,12 @@ from canopy.emitters import flow_temperature
 from canopy.energy import Supply, energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import store_sizes
-from canopy.sizing import Sizing, rerun, size
+from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size
 from weather.record import Weather
 
 Floats = NDArray[np.float64]
+
+AT_LIMIT_K = 0.05  # pipes this close to their highest temperature are at the limit
 
 
 @dataclass(frozen=True)
@@ -72,12 +74,20 @@ def size_candidate(
         weather.typical,
         weather.step_s,
         capped=bool(np.isfinite(case.heating.capacity_w_m2)),
+        pipes_short_h=_pipes_short_h(case, result),
         stores=stores,
     )
     finite = None
     if found.design_w_m2 > 0.0:
         finite = rerun(case, result, weather.time, found.boiler_w_m2, solver)
     return replace(found, finite=finite, energy=_energy(heating, result, shared, found, area)), night
+
+
+def _pipes_short_h(case: HeatCase, result: HeatResult) -> float:
+    """Return the hours in which pipes at their highest temperature leave the house below its set-point."""
+    hot = result.temp_pipe >= case.heating.flow_max_c - AT_LIMIT_K
+    cold = result.temp_air < case.climate.heat_at - BELOW_SETPOINT_K
+    return float(np.count_nonzero(hot & cold)) * case.outside.step_s / S_PER_H
 
 
 def _energy(heating: Any, result: HeatResult, shared: SizingShared, found: Sizing, area: float) -> Any:

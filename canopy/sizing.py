@@ -60,6 +60,7 @@ class Sizing:
     design_w_m2: float
     basis: Basis
     capped: bool  # the load was cut off by the study's own capacity
+    pipes_short_h: float  # hours in which the pipes at their highest flow cannot hold the set-point
     years: float  # length of the record
     curve: LoadCurve
     stores: StoreSizes
@@ -105,6 +106,7 @@ def size(
     typical: bool,
     step_s: float = S_PER_H,
     capped: bool = False,
+    pipes_short_h: float = 0.0,
     stores: Callable[[Floats, float], StoreSizes] = store_sizes,
 ) -> Sizing:
     """Return the sizing of one candidate from its hourly heat.
@@ -138,6 +140,7 @@ def size(
         design_w_m2=design,
         basis=basis,
         capped=capped,
+        pipes_short_h=pipes_short_h,
         years=years,
         curve=load_curve(q, design, step_s),
         stores=stores(q, step_s),
@@ -146,7 +149,8 @@ def size(
         many=several,
         finite=None,
         energy=None,
-        explained=_explain(q[peak], time[peak], loads, night, basis, several, typical, years, capped),
+        explained=_explain(q[peak], time[peak], loads, night, basis, several, typical, years, capped)
+        + _short_pipes(pipes_short_h, night),
     )
 
 
@@ -193,6 +197,19 @@ def _explain(
             f"{many.note}."
         )
     said.append(f"The design heat is taken from: {basis}.")
+    return tuple(said)
+
+
+def _short_pipes(hours: float, night: DesignNight | None) -> tuple[str, ...]:
+    """Return what the pipes lack, if anything."""
+    said = []
+    if hours > 0.0:
+        said.append(
+            f"In {hours:.0f} hours the pipes at their highest flow temperature cannot hold the set-point: "
+            "simulated loads are cut off there; more pipe or hotter water is needed."
+        )
+    if night is not None and night.pipes_note:
+        said.append(f"On the design night the pipes fall short: {night.pipes_note}.")
     return tuple(said)
 
 

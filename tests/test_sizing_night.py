@@ -214,3 +214,15 @@ def test_percentile_temperature() -> None:
     temp = rng.normal(8.0, 9.0, 8760)
     cold = percentile_temperature(temp, 35.0)
     assert np.count_nonzero(temp < cold) == 35  # ASHRAE: 99.6 % of 8760 hours are warmer
+
+
+def test_short_pipes_are_said() -> None:
+    case = winter_case()
+    thin = replace(case, heating=replace(case.heating, pipe_m_per_m2=1.0, flow_max_c=60.0))
+    enough, short = design_night(case, outside(case)), design_night(thin, outside(thin))
+    assert enough is not None
+    assert short is not None
+    assert enough.pipes_note == ""
+    assert "1 m/m2 of pipe at 60 °C give" in short.pipes_note
+    # the load is what the house needs, not what the pipes can do; radiation of more pipes moves it a little
+    assert short.design_w_m2 == pytest.approx(enough.design_w_m2, rel=0.05)
