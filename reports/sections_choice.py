@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from dataclasses import replace
 
 import numpy as np
 
-from canopy.run import Run
+from canopy.run import CandidateRun, Run
 from reports import sentences as say
 from reports.blocks import Figure, Points, Row, Section, Table, Text
 from reports.csvtables import mean_dli
@@ -33,50 +34,38 @@ def which(run: Run, rows: Sequence[Summary], show: Display) -> Section:
 
 def comparison(run: Run, rows: Sequence[Summary], show: Display) -> Table:
     """Return the table that opens the report."""
-    span = say.period(run)
-    body = []
-    for one, mark, cand in zip(rows, marks_of(run), run.candidates, strict=True):
-        body.append(
-            Row(
-                one.name,
-                (
-                    percent(one.light_share, 1),
-                    number(one.dark_dli, 1),
-                    show.bare(one.crop_mol, "mol/m2"),
-                    show.bare(one.heat_kwh, "kWh/m2"),
-                    show.bare(one.total["night_sky_loss_kwh_m2"], "kWh/m2"),
-                    show.bare(one.peak_w, "W/m2"),
-                    show.bare(cand.sizing.design_night_w_m2, "W/m2"),
-                    show.bare(cand.sizing.boiler_kw, "kW"),
-                ),
-                mark,
-            )
-        )
-    return Table(
-        f"What each candidate gives and takes, {span}",
+    priced = any(one.cost is not None for one in rows)
+    columns: list[tuple[str, str, Callable[[Summary, CandidateRun], str]]] = [
+        ("PAR at the crop, of outside", "", lambda r, c: percent(r.light_share, 1)),
         (
-            "candidate",
-            "PAR at the crop, of outside",
             f"daily light, {say.dark_words(run, short=True)}",
-            "PAR the leaves absorb",
-            "heat",
-            "lost to the night sky",
-            "largest hour",
-            "design night",
-            "boiler",
-        ),
-        tuple(body),
-        (
-            "",
-            "",
             "mol/m² a day",
-            show.text("mol/m2"),
-            show.text("kWh/m2"),
-            show.text("kWh/m2"),
-            show.text("W/m2"),
-            show.text("W/m2"),
-            show.text("kW"),
+            lambda r, c: number(r.dark_dli, 1),
         ),
+        ("PAR the leaves absorb", show.text("mol/m2"), lambda r, c: show.bare(r.crop_mol, "mol/m2")),
+        ("heat", show.text("kWh/m2"), lambda r, c: show.bare(r.heat_kwh, "kWh/m2")),
+        (
+            "lost to the night sky",
+            show.text("kWh/m2"),
+            lambda r, c: show.bare(r.total["night_sky_loss_kwh_m2"], "kWh/m2"),
+        ),
+        ("largest hour", show.text("W/m2"), lambda r, c: show.bare(r.peak_w, "W/m2")),
+        ("design night", show.text("W/m2"), lambda r, c: show.bare(c.sizing.design_night_w_m2, "W/m2")),
+        ("boiler", show.text("kW"), lambda r, c: show.bare(c.sizing.boiler_kw, "kW")),
+    ]
+    if priced:
+        columns.append(
+            ("fuel, whole house", rows[0].currency, lambda r, c: say.money(replace(r, currency="")))
+        )
+    body = tuple(
+        Row(one.name, tuple(cell(one, cand) for _, _, cell in columns), mark)
+        for one, mark, cand in zip(rows, marks_of(run), run.candidates, strict=True)
+    )
+    return Table(
+        f"What each candidate gives and takes, {say.period(run)}",
+        ("candidate", *(head for head, _, _ in columns)),
+        body,
+        ("", *(unit for _, unit, _ in columns)),
     )
 
 

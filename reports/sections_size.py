@@ -13,6 +13,7 @@ from reports.blocks import Block, Chooser, Each, Points, Row, Section, Table, Te
 from reports.display import NONE, Display, number, percent, pretty
 from reports.figures import marks_of
 from reports.figures_heat import duration_figure
+from reports.sections_years import energy_table, several_years
 from reports.summary import Summary
 
 
@@ -27,7 +28,7 @@ def size(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         Chooser("Worked out for"),
         Each(each),
     ]
-    blocks += _several_years(run, show)
+    blocks += several_years(run, show)
     fuels = energy_table(run, show)
     if fuels is not None:
         blocks.append(fuels)
@@ -229,106 +230,3 @@ def _store_table(one: CandidateRun, show: Display) -> Table:
         ("", show.text("kWh/m2"), show.text("W/m2"), show.text("W/m2")),
         folded=True,
     )
-
-
-def _several_years(run: Run, show: Display) -> list[Block]:
-    spells = run.candidates[0].sizing.spells
-    blocks: list[Block] = []
-    if spells:
-        parts = [
-            f"{number(x.hours)} h: {show.say(x.mean_c, 'degC')} from {say.hour_words(x.start)}"
-            for x in spells
-        ]
-        blocks.append(Text((f"Coldest spells of the record, mean outside air: {'; '.join(parts)}.",)))
-    many = [(one, one.sizing.many) for one in run.candidates if one.sizing.many is not None]
-    if not many:
-        blocks.append(
-            Text(("One weather year only: spread between years and return levels were not computed.",))
-        )
-        return blocks
-    rows = []
-    for (one, m), mark in zip(many, marks_of(run), strict=True):
-        levels = "; ".join(
-            f"{number(x.years)} years: {show.bare(x.level, 'W/m2')} ({show.bare(x.low, 'W/m2')} to "
-            f"{show.bare(x.high, 'W/m2')})"
-            for x in m.levels
-        )
-        rows.append(
-            Row(
-                one.plan.name,
-                (
-                    number(len(m.years)),
-                    f"{show.bare(float(m.peak_w_m2.min()), 'W/m2')} to "
-                    f"{show.bare(float(m.peak_w_m2.max()), 'W/m2')}",
-                    f"{show.bare(float(m.annual_heat_kwh_m2.min()), 'kWh/m2')} to "
-                    f"{show.bare(float(m.annual_heat_kwh_m2.max()), 'kWh/m2')}",
-                    levels or "not computed",
-                ),
-                mark,
-            )
-        )
-    blocks.append(
-        Table(
-            "Spread over the years; load reached once in so many years, with its 90 % interval",
-            ("candidate", "years", "largest hour", "heat in a year", "return level"),
-            tuple(rows),
-            ("", "", show.text("W/m2"), show.text("kWh/m2"), show.text("W/m2")),
-            words=True,
-        )
-    )
-    blocks.append(Points(tuple(dict.fromkeys(m.note for _, m in many))))
-    return blocks
-
-
-def energy_table(run: Run, show: Display) -> Table | None:
-    """Return fuel, CO2 and cost; None when no candidate has a supply."""
-    rows, priced = [], False
-    for one, mark in zip(run.candidates, marks_of(run), strict=True):
-        e = one.sizing.energy
-        if e is None:
-            continue
-        cost = e.total_cost
-        priced = priced or cost is not None
-        currency = next((c.currency for c in (e.boiler_cost, e.electricity_cost) if c is not None), "")
-        pump = e.pump
-        rows.append(
-            Row(
-                one.plan.name,
-                (
-                    e.boiler.fuel.title,
-                    f"{number(e.boiler.amount)} {_unit(e.boiler.fuel.unit)}",
-                    number(e.boiler.gross_kwh),
-                    NONE if e.electricity is None else number(e.electricity.gross_kwh),
-                    NONE
-                    if pump is None
-                    else f"{number(pump.seasonal, 2)} ({percent(pump.heat_share)} of the heat)",
-                    NONE if e.co2_kg is None else f"{number(e.co2_kg / 1000.0, 1)}",
-                    NONE if cost is None else f"{number(cost)} {currency}".strip(),
-                ),
-                mark,
-            )
-        )
-    if not rows:
-        return None
-    note = "" if priced else "; no price is given in the study"
-    return Table(
-        "Fuel for the whole house, "
-        f"{say.period(run) if len(run.hours) == len(run.weather) else 'whole record'}{note}",
-        (
-            "candidate",
-            "supply",
-            "bought",
-            "gross heating value",
-            "electricity",
-            "heat pump, seasonal",
-            "CO₂",
-            "cost",
-        ),
-        tuple(rows),
-        ("", "", "", "kWh", "kWh", "", "t", ""),
-        words=True,
-    )
-
-
-def _unit(unit: str) -> str:
-    return {"m3": "m³", "l": "litres", "t": "t", "kWh": "kWh"}.get(unit, unit)

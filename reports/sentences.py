@@ -9,7 +9,7 @@ import numpy as np
 
 from canopy.run import Run
 from canopy.seasonal import Seasonal
-from reports.display import Display, number, percent
+from reports.display import NONE, Display, number, percent
 from reports.summary import FULL_YEAR_DAYS, Summary, beaten, dark_months
 
 MONTHS: Final = (
@@ -143,8 +143,17 @@ def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         saved, lost = base.heat_kwh - one.heat_kwh, base.inside_mol - one.inside_mol
         if saved > SAME * base.heat_kwh and lost > SAME * base.inside_mol:
             text += f" For each mol of PAR given up it saves {show.say(saved / lost, 'kWh/mol')} of heat."
+        if one.cost is not None and base.cost is not None:
+            text += (
+                f" At the study's prices its fuel costs {money(one)} instead of {money(base)}, whole house."
+            )
         lines.append(text)
     return tuple(lines)
+
+
+def money(one: Summary) -> str:
+    """Return what a candidate's fuel costs, in the study's currency."""
+    return NONE if one.cost is None else f"{number(one.cost)}\u00a0{one.currency}".strip()
 
 
 def verdicts(rows: Sequence[Summary]) -> tuple[str, ...]:

@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from canopy.bands import SOLAR
+from canopy.energy import Energy
 from canopy.ledger import season
 from canopy.run import CandidateRun, Run
 from reports.csvtables import mean_dli
@@ -37,6 +38,8 @@ class Summary:
     dark_inside_mol: float  # PAR at the crop over the darkest months
     sheet_par: float  # PAR, diffuse, through the covering alone (dry)
     house_par: float  # PAR, isotropic, whole house (dry)
+    cost: float | None  # fuel and power of the whole house over the record; None without a price
+    currency: str
 
     @property
     def light_share(self) -> float:
@@ -62,6 +65,7 @@ def summarise(run: Run, one: CandidateRun) -> Summary:
     inside = one.daily["inside_par_mol_m2"]
     in_dark = np.isin(days, np.array(run.months)[dark])
     dli = mean_dli(run, one)[1][dark]
+    energy: Energy | None = one.sizing.energy
     return Summary(
         name=one.plan.name,
         total=total,
@@ -75,7 +79,14 @@ def summarise(run: Run, one: CandidateRun) -> Summary:
         dark_inside_mol=float(inside[in_dark].sum()),
         sheet_par=float(one.covering.solar_dry.diffuse_in[PAR]),
         house_par=float(one.transmission.isotropic[PAR]),
+        cost=None if energy is None else energy.total_cost,
+        currency="" if energy is None else _currency(energy),
     )
+
+
+def _currency(energy: Energy) -> str:
+    costs = (energy.boiler_cost, energy.electricity_cost)
+    return next((c.currency for c in costs if c is not None and c.currency), "")
 
 
 def summaries(run: Run) -> tuple[Summary, ...]:
