@@ -3,8 +3,11 @@
 from __future__ import annotations
 
 import shutil
+import sys
 import time
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
+from pathlib import Path
 from typing import TextIO
 
 from canopy.run import Run
@@ -58,6 +61,27 @@ def _row(one: Summary, boiler: float, show: Display) -> tuple[str, ...]:
         show.bare(one.peak_w, "W/m2"),
         show.bare(boiler, "kW"),
     )
+
+
+def show(run: Run, files: Sequence[Path]) -> None:
+    """Print the result and where the files are."""
+    print(result_table(run))
+    if run.weather.clear_sky:
+        print("\nA computed clear-sky record: light is an upper bound.")
+    if run.weather.typical:
+        print("\nA typical weather year: extremes are removed; size from the design night, with local codes.")
+    names = ", ".join(path.name for path in files[1:])
+    print(f"\n{files[0]}: the report\nbeside it: {names}")
+
+
+@contextmanager
+def progress() -> Iterator[StageLine]:
+    """Give a function that says on stderr what is being done; the line is cleared at the end."""
+    line = StageLine(sys.stderr)
+    try:
+        yield line
+    finally:
+        line.done()
 
 
 class StageLine:

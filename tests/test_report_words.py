@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import io
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -32,7 +34,7 @@ from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
 from reports.nights import find_nights, night_pattern
 from reports.summary import beaten, house_differences, summaries
-from reports.terminal import plain, result_table
+from reports.terminal import StageLine, plain, progress, result_table, show
 from tests.reportcase import Fake, fakes, make_run
 
 
@@ -202,3 +204,33 @@ def test_the_terminal_table_fits_and_carries_no_control_characters(run: Run) -> 
     assert max(map(len, text.splitlines())) <= 120
     assert text.splitlines()[0].endswith("totals a year")
     assert plain("a" * 50, 10) == "a" * 9 + "…"
+
+
+def test_the_end_of_a_run_says_where_the_files_are(run: Run, capsys: pytest.CaptureFixture[str]) -> None:
+    show(run, [Path("out/report.html"), Path("out/daily.csv"), Path("out/run.json")])
+    said = capsys.readouterr().out
+    assert "out/report.html: the report" in said
+    assert "beside it: daily.csv, run.json" in said
+    assert "typical weather year" in said
+
+
+def test_progress_is_one_line_per_stage_in_a_pipe(capsys: pytest.CaptureFixture[str]) -> None:
+    with progress() as say_stage:
+        say_stage("weather")
+        say_stage("single \x1b[31mglass (1 of 2)")
+    lines = capsys.readouterr().err.splitlines()
+    assert [line.split(" s  ")[1] for line in lines] == ["weather", "single ?[31mglass (1 of 2)"]
+
+
+def test_progress_changes_in_place_on_a_terminal() -> None:
+    class Terminal(io.StringIO):
+        def isatty(self) -> bool:
+            return True
+
+    screen = Terminal()
+    line = StageLine(screen)
+    line("weather")
+    line.done()
+    assert "\n" not in screen.getvalue()
+    assert screen.getvalue().startswith("\r")
+    assert screen.getvalue().endswith("\x1b[2K")
