@@ -1,4 +1,4 @@
-"""A covering's optics from its layers: solar bands by angle and diffuse, thermal bands per layer, dry and wet.
+"""Optics of a covering from its layers: solar bands by angle, diffuse, thermal bands by layer, dry and wet.
 
 Every wavelength cell, polarisation and direction is computed apart and averaged at the end: over ASTM G173
 sunlight in the solar bands, over a blackbody in the thermal ones. Isotropic values are integrals over angle.
