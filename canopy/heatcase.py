@@ -96,6 +96,7 @@ class Climate:
     screen_drawn: Floats  # (S, N) 0 stowed ... 1 drawn
     min_pipe_c: Floats  # (N,) lowest pipe temperature while heating is on; -inf: none
     limit_c: Floats  # (N,) the crop's lower limit, for hours below it
+    screen_gap_max: Floats | None = None  # (N,) widest gap, share of area, that drawn screens may open
 
 
 @dataclass(frozen=True)
@@ -130,8 +131,8 @@ class HeatResult:
     """Temperatures (degC) and fluxes (W/m2 floor), hour by hour; losses and stores taken up are positive.
 
     Identity, every hour: heat_delivered + solar == sky_loss + surroundings_loss + convection_loss
-    + air_change_loss + venting + perimeter_loss + soil_store + deep_loss + air_store + vapour_store + crop_store
-    + pipe_store + covering_store + drain_loss, to `closure`.
+    + air_change_loss + venting + perimeter_loss + deep_loss + drain_loss + soil_store + air_store
+    + vapour_store + crop_store + pipe_store + covering_store, to `closure`.
     """
 
     temp_air: Floats

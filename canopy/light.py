@@ -73,7 +73,7 @@ class Light:
     crop: Floats  # (B, N) absorbed by leaves
     crop_sunlit: Floats  # (B, N) the part absorbed by sunlit leaves
     ground: Floats  # (B, N) absorbed under the crop
-    crop_up: Floats  # (B, N) upwards at the top of the crop; inside_beam + inside_diffuse - crop_up = crop + ground
+    crop_up: Floats  # (B, N) upwards at the top of the crop: beam + diffuse - up = crop + ground
     covering: Floats  # (L, B, N) absorbed by each covering layer
     screen: Floats  # (S, B, N) absorbed by each screen
     structure: Floats  # (B, N) absorbed by gutters, ridges, bars (goes to the house air)

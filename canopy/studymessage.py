@@ -54,7 +54,8 @@ def say(
     error: ValidationError, label: str, raw: Mapping[str, Any], above: tuple[str | int, ...] = ()
 ) -> UserError:
     """Return the one-line message for a failed check: file, table -> key, what was found, what is allowed."""
-    first = error.errors(include_url=False)[0]
+    found_errors = error.errors(include_url=False)
+    first = next((e for e in found_errors if e["type"] == "extra_forbidden"), found_errors[0])
     where = above + tuple(first["loc"])
     kind, found = first["type"], first.get("input")
     text = first["msg"].removeprefix("Value error, ")

@@ -45,8 +45,14 @@ def _weather_line(keys: WeatherKeys, study: Study) -> str:
     return text
 
 
-def _check_files(study: Study) -> None:
+def check_files(study: Study) -> None:
+    """Refuse a study that names files that are not there (UserError)."""
+    from weather.typical import shipped_names
+
     keys = study.keys.weather
+    if keys.shipped is not None and keys.shipped not in shipped_names():
+        hint = nearest(keys.shipped, shipped_names()) or f"; known: {', '.join(shipped_names())}"
+        raise UserError(f'{study.label}: weather -> shipped: unknown year "{keys.shipped}"{hint}')
     names = [("weather -> file", keys.file)] + [("weather -> files", f) for f in keys.files]
     names += [(f'covering "{c.name}" -> spectrum', c.spectrum) for c in study.keys.covering]
     for plan in study.plans:
@@ -65,8 +71,8 @@ def _plan_line(plan: Plan) -> str:
     roof = f"rise {house.rise:g} m" if house.form == "arch" else f"pitch {house.pitch or 24:g}°"
     screens = f" with {', '.join(plan.screens)}" if plan.screens else ""
     return (
-        f"  {plan.name}: {plan.covering}{screens}; {house.spans} {house.form} spans of {house.span_width:g} m x "
-        f"{house.length:g} m, gutter {house.gutter_height:g} m, {roof}, ridge {house.ridge_azimuth:g}°"
+        f"  {plan.name}: {plan.covering}{screens}; {house.spans} {house.form} spans of "
+        f"{house.span_width:g} m x {house.length:g} m, gutter {house.gutter_height:g} m, {roof}, ridge {house.ridge_azimuth:g}°"
     )
 
 
@@ -75,15 +81,9 @@ def check_text(path: Path) -> str:
 
     Errors: UserError as `load_study`, and for files that are not there.
     """
-    from weather.typical import shipped_names
-
     study = load_study(path)
-    _check_files(study)
+    check_files(study)
     keys = study.keys
-    if keys.weather.shipped is not None and keys.weather.shipped not in shipped_names():
-        hint = nearest(keys.weather.shipped, shipped_names()) or f"; known: {', '.join(shipped_names())}"
-        crumb = f"{study.label}: weather -> shipped"
-        raise UserError(f'{crumb}: unknown year "{keys.weather.shipped}"{hint}')
     site = keys.site
     place = (
         f"{site.latitude:g}°, {site.longitude:g}°" if site.latitude is not None else "as in the weather file"

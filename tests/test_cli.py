@@ -1,0 +1,177 @@
+"""The command line by exit code and text: help, starter, check, and one short message for bad input."""
+
+from __future__ import annotations
+
+import os
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+from reports.studyfiles import study_text
+from tests.conftest import Cli
+
+COMMANDS = ("demo", "new", "check", "run", "coverings", "weather", "bands")
+
+
+def _study(tmp_path: Path, text: str, name: str = "study.toml") -> Path:
+    path = tmp_path / name
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+def _refused(done: subprocess.CompletedProcess[str], *parts: str) -> str:
+    said = done.stderr.strip()
+    assert done.returncode == 2, (done.returncode, done.stdout, done.stderr)
+    assert "Traceback" not in said
+    assert len(said.splitlines()) == 1, said
+    for part in parts:
+        assert part in said, (part, said)
+    return said
+
+
+def test_help_names_every_command(cli: Cli) -> None:
+    done = cli("--help")
+    assert done.returncode == 0
+    for name in COMMANDS:
+        assert f" {name} " in done.stdout
+    for name in COMMANDS:
+        assert cli(name, "--help").returncode == 0
+
+
+@pytest.mark.parametrize("args", [["--help"], ["check", "STARTER"]])
+def test_light_commands_import_nothing_heavy(tmp_path: Path, args: list[str]) -> None:
+    starter = _study(tmp_path, study_text("starter"))
+    args = [str(starter) if a == "STARTER" else a for a in args]
+    code = (
+        "import sys\n"
+        "from reports.cli import app\n"
+        f"try:\n    app({args!r})\nexcept SystemExit as end:\n    assert not end.code, end.code\n"
+        "heavy = {'pandas', 'pvlib', 'plotly', 'scipy'} & set(sys.modules)\n"
+        "assert not heavy, heavy\n"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+
+
+def test_new_writes_a_study_that_check_accepts_and_keeps_existing_files(cli: Cli, tmp_path: Path) -> None:
+    path = tmp_path / "my.toml"
+    assert cli("new", path).returncode == 0
+    done = cli("check", path)
+    assert done.returncode == 0, done.stderr
+    assert "3 candidate(s)" in done.stdout
+    path.write_text("mine", encoding="utf-8")
+    _refused(cli("new", path), "exists already")
+    assert path.read_text(encoding="utf-8") == "mine"
+
+
+def test_demo_study_is_in_order(cli: Cli, tmp_path: Path) -> None:
+    done = cli("check", _study(tmp_path, study_text("demo")))
+    assert done.returncode == 0, done.stderr
+    assert "5 candidate(s)" in done.stdout
+
+
+BAD = {
+    "unknown key": ("spans = 10", "spanz = 10", ["house -> spanz", 'did you mean "spans"']),
+    "wrong type": ("spans = 10", 'spans = "ten"', ["house -> spans", "'ten'", "integer"]),
+    "out of range": ("gutter_height = 4.5", "gutter_height = 45", ["house -> gutter_height", "45", "12"]),
+    "true for a number": ("spans = 10", "spans = true", ["house -> spans", "True"]),
+    "not a number": ("length = 60.0", "length = nan", ["house -> length", "finite"]),
+    "unknown covering": ("glass-clear-4", "glas-clear-4", ['"glas-clear-4"', 'did you mean "glass-clear-4"']),
+    "unknown screen": ('["night screen"]', '["nite screen"]', ["screens", 'did you mean "night screen"']),
+    "one name twice": (
+        'name = "single glass, night screen"',
+        'name = "Single glass"',
+        ["candidate", "two are called"],
+    ),
+    "swapped": (
+        "latitude = 36.1               # degrees, north is positive\nlongitude = -79.95",
+        "latitude = -79.95\nlongitude = 36.1",
+        ["site -> latitude", "look swapped"],
+    ),
+    "bad date": ('["03-10", 3.0]', '["02-30", 3.0]', ["crop -> leaf_area_index", "02-30", "MM-DD"]),
+    "bad season value": ('["03-10", 3.0]', '["03-10", 30.0]', ["crop -> leaf_area_index", "outside 0 to 10"]),
+    "missing weather": ('shipped = "greensboro"', 'file = "none.epw"', ["none.epw", "no such file"]),
+    "no weather source": ('shipped = "greensboro"', "", ["weather", "one of file, files, shipped"]),
+    "unknown shipped year": ('"greensboro"', '"greensburo"', ['did you mean "greensboro"']),
+    "broken toml": ("[house]", "[house", ["not valid TOML", "line"]),
+    "pitch on an arch": ("rise = 1.9", "pitch = 20.0", ["house", "rise"]),
+    "unknown zone": ("America/New_York", "America/New_Yrok", ["site -> timezone", "America/New_York"]),
+}
+
+
+@pytest.mark.parametrize("case", BAD)
+def test_bad_studies_end_with_one_short_message(cli: Cli, tmp_path: Path, case: str) -> None:
+    old, new, parts = BAD[case]
+    text = study_text("starter")
+    assert old in text
+    path = _study(tmp_path, text.replace(old, new, 1))
+    _refused(cli("check", path), *parts)
+    out = tmp_path / "out"
+    _refused(cli("run", path, "--out", out), *parts)
+    assert not out.exists()
+
+
+@pytest.mark.parametrize(
+    ("blob", "part"),
+    [
+        (b"\xff\xfe title", "not UTF-8"),
+        (b"a = " + b"[" * 60_000, "nested too deep"),
+        (b"", "weather"),
+        (b"x = 1", "unknown key"),
+    ],
+)
+def test_files_that_are_no_study(cli: Cli, tmp_path: Path, blob: bytes, part: str) -> None:
+    path = tmp_path / "odd.toml"
+    path.write_bytes(blob)
+    _refused(cli("check", path), part)
+
+
+def test_missing_and_special_files(cli: Cli, tmp_path: Path) -> None:
+    _refused(cli("check", tmp_path / "absent.toml"), "no such file")
+    _refused(cli("check", tmp_path), "no regular file")
+    os.mkfifo(tmp_path / "pipe.toml")
+    _refused(cli("check", tmp_path / "pipe.toml"), "no regular file")
+
+
+def test_output_that_cannot_be_written(cli: Cli, tmp_path: Path) -> None:
+    blocked = tmp_path / "taken"
+    blocked.write_text("a file", encoding="utf-8")
+    _refused(cli("demo", "--out", blocked), "taken")
+    assert blocked.read_text(encoding="utf-8") == "a file"
+    _refused(cli("demo", "--out", blocked / "inner"), "inner")
+
+
+def test_unreadable_weather_file(cli: Cli, tmp_path: Path) -> None:
+    (tmp_path / "noise.epw").write_bytes(bytes(range(256)) * 20)
+    text = study_text("starter").replace('shipped = "greensboro"', 'file = "noise.epw"')
+    path = _study(tmp_path, text)
+    _refused(cli("run", path, "--out", tmp_path / "out"), "noise.epw")
+    assert not (tmp_path / "out").exists()
+
+
+def test_bands_of_black_surfaces(cli: Cli) -> None:
+    # peak 9.659 µm at 300 K: Wien's law, CODATA 2018; share 8-14 µm .37574: Planck's law by quadrature
+    done = cli("bands", "--temperature", "300", "--edges", "8,14")
+    assert done.returncode == 0, done.stderr
+    assert "9.6592 µm" in done.stdout
+    assert "0.37574" in done.stdout
+    _refused(cli("bands", "--temperature", "-5"), "--temperature")
+    _refused(cli("bands", "--temperature", "300", "--edges", "14,8"), "rise")
+    _refused(cli("bands", "--temperature", "300", "--edges", "8,x"), "'x'")
+
+
+def test_a_bug_says_so(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
+    import reports.studyfiles
+    from reports.cli import main
+
+    def broken(path: Path) -> str:
+        raise ZeroDivisionError
+
+    monkeypatch.setattr(reports.studyfiles, "check_text", broken)
+    monkeypatch.setattr(sys, "argv", ["canopy-budget", "check", "x.toml"])
+    with pytest.raises(SystemExit) as end:
+        main()
+    assert end.value.code == 1
+    assert "this is a bug" in capsys.readouterr().err
