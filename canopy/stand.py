@@ -1,47 +1,65 @@
 """Light in a leaf canopy over its ground, hour by hour: what leaves and ground take, what goes up again.
 
 The stand over a black ground comes from `standtable`; leaves and ground then pass light to and fro without
-end, which sums in closed form (adding method). Part of the floor may be bare (`ground_cover`).
+end, which sums in closed form (adding method). Rows meet light as their exact gaps say, hour by hour; what
+they meet is scattered as in the even stand with the same recollision probability. Part of the floor may be
+bare (`ground_cover`).
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import partial
 
 import numpy as np
 from numpy.typing import NDArray
 
-from canopy.leafangle import extinction
+from canopy.leafangle import GRAZING_DEG, extinction
 from canopy.light import StandResponse
 from canopy.optics import Ground, Leaf
+from canopy.rows import Rows, row_sight
 from canopy.standtable import StandTable, stand_table
 
 Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
 
 
 @dataclass(frozen=True)
 class Stand:
     """A leaf canopy.
 
-    lai: (N,) m2 of leaf, one side, per m2 of FLOOR (bare floor included); 0 is an empty house.
+    lai: (N,) m2 of leaf, one side, per m2 of FLOOR (alleys and bare floor included); 0 is an empty house.
     chi: ellipsoid parameter of leaf angles, below 1 upright, 1 spherical, above 1 flat.
-    ground_cover: share of the floor that is planted; the rest is bare.
+    rows: shape of the rows, or None for leaves that are spread evenly.
+    ground_cover: share of the floor that is planted (evenly or in rows); the rest is bare.
     """
 
     lai: Floats
     chi: float = 1.0
+    rows: Rows | None = None
     ground_cover: float = 1.0
 
 
 @dataclass(frozen=True)
-class _Layer:
-    """A planted floor as light meets it: (N,) each."""
+class _Met:
+    """How leaves meet light, rows or not: (N,) each. `like` is the even stand that scatters alike."""
 
-    lai: Floats
-    kb: Floats
-    met: Floats  # share of the beam that leaves meet
-    met_diffuse: Floats
+    like: Floats
+    beam: Floats  # share of the beam that leaves meet
+    diffuse: Floats  # of isotropic light
+    beam_patch: Floats  # of light sent up from where the beam reached the floor
+    diffuse_patch: Floats  # of light sent up from where isotropic light reached the floor
+    kb: Floats  # extinction coefficient of the beam
+
+    def at(self, hours: Bools) -> _Met:
+        """Return some hours only."""
+        return _Met(
+            self.like[hours],
+            self.beam[hours],
+            self.diffuse[hours],
+            self.beam_patch[hours],
+            self.diffuse_patch[hours],
+            self.kb[hours],
+        )
 
 
 @dataclass(frozen=True)
@@ -53,6 +71,16 @@ class _Answer:
     up: Floats
     sunlit: Floats
 
+    def beside_bare(self, planted: float, reflect: Floats) -> _Answer:
+        """Return planted and bare floor side by side."""
+        bare = 1.0 - planted
+        return _Answer(
+            crop=planted * self.crop,
+            ground=planted * self.ground + bare * (1.0 - reflect),
+            up=planted * self.up + bare * reflect,
+            sunlit=planted * self.sunlit,
+        )
+
 
 def respond(
     stand: Stand, leaf: Leaf, ground: Ground, zenith_deg: Floats, azimuth_deg: Floats
@@ -63,23 +91,22 @@ def respond(
     for diffuse light, and no leaf is sunlit. Angles above 89.5 degrees count as 89.5.
     """
     zenith = np.radians(np.asarray(zenith_deg, float))
-    lai = np.broadcast_to(np.asarray(stand.lai, float), zenith.shape)
-    planted = lai / stand.ground_cover
+    planted = stand.ground_cover
+    lai = np.broadcast_to(np.asarray(stand.lai, float), zenith.shape) / planted
     up = np.cos(zenith) > 1e-9
+    sun = np.where(up, np.minimum(zenith, np.radians(GRAZING_DEG)), 0.0)
     table = stand_table(leaf.reflect, leaf.transmit, stand.chi)
     reflect = ground.reflect[:, None]
+    met = _even(stand, table, lai, sun) if stand.rows is None else _in_rows(stand, lai, sun, azimuth_deg, up)
 
-    kb = extinction(stand.chi, np.where(up, zenith, 0.0))
-    met = -np.expm1(-kb * planted)
-    met_diffuse = table.interception(planted)
-    layer = _Layer(planted, kb, met, met_diffuse)
-    day = _Layer(*(value[up] for value in (planted, kb, met, met_diffuse)))
-    diffuse, beam = _light(table, layer, day, zenith[up], up, reflect)
-
-    share = stand.ground_cover
-    sunlit_lai = share * np.where(up, met / kb, 0.0)
-    mixed = partial(_mixed, share=share, reflect=reflect)
-    beam, diffuse = mixed(beam), mixed(diffuse)
+    diffuse = _diffuse(table, met, reflect)
+    beam = _Answer(diffuse.crop.copy(), diffuse.ground.copy(), diffuse.up.copy(), np.zeros_like(diffuse.up))
+    if up.any():
+        by_day = _beam(table, met.at(up), sun[up], reflect)
+        for whole, part in zip(_parts(beam), _parts(by_day.beam), strict=True):
+            whole[:, up] = part
+        diffuse.sunlit[:, up] = by_day.diffuse_sunlit
+    beam, diffuse = beam.beside_bare(planted, reflect), diffuse.beside_bare(planted, reflect)
     return StandResponse(
         beam_crop=beam.crop,
         beam_ground=beam.ground,
@@ -87,50 +114,90 @@ def respond(
         diffuse_crop=diffuse.crop,
         diffuse_ground=diffuse.ground,
         diffuse_up=diffuse.up,
-        sunlit_lai=sunlit_lai,
+        sunlit_lai=planted * np.where(up, met.beam / met.kb, 0.0),
         beam_crop_sunlit=beam.sunlit,
         diffuse_crop_sunlit=diffuse.sunlit,
-        beam_gap=1.0 - share * np.where(up, met, met_diffuse),
-        diffuse_gap=1.0 - share * met_diffuse,
+        beam_gap=1.0 - planted * np.where(up, met.beam, met.diffuse),
+        diffuse_gap=1.0 - planted * met.diffuse,
     )
 
 
-def _mixed(planted: _Answer, share: float, reflect: Floats) -> _Answer:
-    """Return planted and bare floor side by side."""
-    bare = 1.0 - share
-    return _Answer(
-        crop=share * planted.crop,
-        ground=share * planted.ground + bare * (1.0 - reflect),
-        up=share * planted.up + bare * reflect,
-        sunlit=share * planted.sunlit,
-    )
+def _parts(answer: _Answer) -> tuple[Floats, Floats, Floats, Floats]:
+    return answer.crop, answer.ground, answer.up, answer.sunlit
 
 
-def _light(
-    table: StandTable, layer: _Layer, day: _Layer, zenith: Floats, up: NDArray[np.bool_], reflect: Floats
-) -> tuple[_Answer, _Answer]:
-    """Return the answers for diffuse light and for the beam."""
-    down, back = table.diffuse_shares(layer.lai)
-    through = 1.0 - layer.met_diffuse * (1.0 - down)  # of isotropic light, reaches the ground
-    returned = layer.met_diffuse * back
-    taken = layer.met_diffuse * (1.0 - down - back)
-    bounce = 1.0 / (1.0 - reflect * returned)
-    on_ground = through * bounce
-    sent = reflect * on_ground  # upwards from the ground
-    sunlit = np.zeros_like(taken)
-    diffuse = _Answer(taken + sent * taken, on_ground - sent, returned + sent * through, sunlit)
+def _even(stand: Stand, table: StandTable, lai: Floats, sun: Floats) -> _Met:
+    """Leaves spread evenly: the floor is lit evenly."""
+    kb = extinction(stand.chi, sun)
+    diffuse = table.interception(lai)
+    return _Met(lai, -np.expm1(-kb * lai), diffuse, diffuse, diffuse, kb)
 
-    shares = table.beam_shares(day.lai, zenith)
-    beam_on_ground = (1.0 - day.met * (1.0 - shares.beam_down)) * bounce[:, up]
-    beam_sent = reflect * beam_on_ground
+
+def _in_rows(stand: Stand, lai: Floats, sun: Floats, azimuth_deg: Floats, up: Bools) -> _Met:
+    """Rows: exact gaps, and floor that is lit where it also sees the sky."""
+    rows = stand.rows
+    assert rows is not None
+    sight = row_sight(rows, stand.chi)
+    kb = extinction(stand.chi, sun)
+    diffuse = sight.interception(lai)
+    sky = sight.floor_sky(lai)
+    diffuse_patch = 1.0 - (sky**2).mean(1) / sky.mean(1)
+    beam, beam_patch = diffuse.copy(), diffuse_patch.copy()
+    across = np.radians(np.asarray(azimuth_deg, float)[up] - rows.azimuth)
+    thick, sweep = (kb * lai)[up], rows.sweep(sun[up], across)
+    beam[up] = 1.0 - rows.gap(thick, sweep)
+    lit = rows.reaching(thick, sweep)
+    beam_patch[up] = 1.0 - (lit * sky[up].T).mean(0) / np.maximum(lit.mean(0), 1e-30)
+    return _Met(sight.like_lai(lai), beam, diffuse, beam_patch, diffuse_patch, kb)
+
+
+def _diffuse(table: StandTable, met: _Met, reflect: Floats) -> _Answer:
+    """Return the answer to isotropic light, sunlit leaves left at nil."""
+    down, back = table.diffuse_shares(met.like)
+    return _bounced(met.diffuse, down, back, met.diffuse_patch, met.diffuse, down, back, reflect)[0]
+
+
+@dataclass(frozen=True)
+class _Day:
+    beam: _Answer
+    diffuse_sunlit: Floats  # (B, N)
+
+
+def _beam(table: StandTable, met: _Met, sun: Floats, reflect: Floats) -> _Day:
+    """Return the answer to the beam, and what sunlit leaves take of isotropic light."""
+    shares = table.beam_shares(met.like, sun)
+    down, back = table.diffuse_shares(met.like)
     keep = 1.0 - table.scatter[:, None]
-    crop = day.met * (1.0 - shares.beam_down - shares.beam_up) + beam_sent * taken[:, up]
-    back_up = day.met * shares.beam_up + beam_sent * through[:, up]
-    below = day.met_diffuse * shares.below_met_sunlit
-    lit = keep * (day.met * (1.0 + shares.beam_met_sunlit) + beam_sent * below)
-    sunlit[:, up] = keep * (day.met_diffuse * shares.top_met_sunlit + sent[:, up] * below)
+    answer, from_below = _bounced(
+        met.beam, shares.beam_down, shares.beam_up, met.beam_patch, met.diffuse, down, back, reflect
+    )
+    sunlit = keep * (met.beam * (1.0 + shares.beam_met_sunlit) + from_below * shares.below_met_sunlit)
+    _, from_below = _bounced(met.diffuse, down, back, met.diffuse_patch, met.diffuse, down, back, reflect)
+    diffuse_sunlit = keep * (met.diffuse * shares.top_met_sunlit + from_below * shares.below_met_sunlit)
+    return _Day(_Answer(answer.crop, answer.ground, answer.up, sunlit), diffuse_sunlit)
 
-    beam = _Answer(diffuse.crop.copy(), diffuse.ground.copy(), diffuse.up.copy(), np.zeros_like(sunlit))
-    beam.crop[:, up], beam.ground[:, up], beam.up[:, up] = crop, beam_on_ground - beam_sent, back_up
-    beam.sunlit[:, up] = lit
-    return diffuse, beam
+
+def _bounced(
+    met: Floats,
+    down: Floats,
+    up: Floats,
+    patch: Floats,
+    met_below: Floats,
+    onward: Floats,
+    back: Floats,
+    reflect: Floats,
+) -> tuple[_Answer, Floats]:
+    """Sum the light that leaves and ground pass to and fro.
+
+    met: share that leaves meet on the way down, of which `down` and `up` leave scattered; patch, met_below:
+    share met of light sent up from where unscattered light landed, and from the floor at large, of which
+    `onward` leaves at the top and `back` below. Returns the answer and what leaves meet of light from below.
+    """
+    first = reflect * (1.0 - met)
+    rest = (met * down + first * patch * back) / (1.0 - reflect * met_below * back)
+    sent = reflect * rest
+    from_below = first * patch + sent * met_below
+    leaving = met * up + first + sent - from_below * (1.0 - onward)
+    ground = (1.0 - reflect) * (1.0 - met + rest)
+    crop = met * (1.0 - down - up) + from_below * (1.0 - onward - back)
+    return _Answer(crop, ground, leaving, np.zeros_like(crop)), from_below

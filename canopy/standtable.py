@@ -77,16 +77,13 @@ class StandTable:
 
     def diffuse_shares(self, lai: Floats) -> tuple[Floats, Floats]:
         """Return what leaves downwards and upwards of intercepted isotropic light, (B, N) each."""
-        lower, across = _lai_weights(lai)
-        answer = _weighted(lower[:, None] + np.arange(4), across, self.diffuse)
+        answer = lai_interpolate(lai, self.diffuse)
         bands = len(self.scatter)
         return answer[:, :bands].T, answer[:, bands : 2 * bands].T
 
     def interception(self, lai: Floats) -> Floats:
         """Return the share of isotropic light that leaves meet, (N,)."""
-        thin = np.minimum(lai / LEAST_LAI, 1.0)
-        lower, across = _lai_weights(lai)
-        return np.asarray(_weighted(lower[:, None] + np.arange(4), across, self.diffuse)[:, -1] * thin)
+        return lai_interpolate(lai, self.diffuse[:, -1]) * np.minimum(lai / LEAST_LAI, 1.0)
 
 
 def _weighted(columns: NDArray[np.intp], weights: Floats, table: Floats) -> Floats:
@@ -97,10 +94,18 @@ def _weighted(columns: NDArray[np.intp], weights: Floats, table: Floats) -> Floa
     return np.asarray(matrix @ table)
 
 
-def _lai_nodes() -> Floats:
+def lai_nodes() -> Floats:
+    """Return the leaf areas that tables are kept for, (D,), rising."""
     top = math.log1p(MOST_LAI / _LAI_KNEE)
     bottom = math.log1p(LEAST_LAI / _LAI_KNEE)
     return np.asarray(_LAI_KNEE * np.expm1(np.linspace(bottom, top, _LAI_NODES)))
+
+
+def lai_interpolate(lai: Floats, values: Floats) -> Floats:
+    """Return values kept at `lai_nodes`, (D,) or (D, A), at leaf areas (N,)."""
+    lower, across = _lai_weights(lai)
+    found = _weighted(lower[:, None] + np.arange(4), across, values.reshape(len(values), -1))
+    return found.reshape(len(lai), *values.shape[1:])
 
 
 def _lai_weights(lai: Floats) -> tuple[NDArray[np.intp], Floats]:
@@ -127,7 +132,7 @@ def _cubic(place: Floats, nodes: int) -> tuple[NDArray[np.intp], Floats]:
 def _build(reflect: tuple[float, ...], transmit: tuple[float, ...], chi: float) -> StandTable:
     """Solve every node."""
     modes = make_modes(np.array(reflect), np.array(transmit), chi)
-    lai = _lai_nodes()
+    lai = lai_nodes()
     zenith = 0.5 * math.pi * (1.0 - np.linspace(_LOW_SUN, 1.0, _SUN_NODES) ** 2)
     kb = extinction(chi, zenith)
     met = -np.expm1(-kb * lai[:, None])
