@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Final
 
@@ -39,6 +40,17 @@ class Spell:
     hours: int
     mean_c: float
     start: np.datetime64
+
+
+@dataclass(frozen=True)
+class YearLoad:
+    """One year's heating: highest hour (W/m2 floor), heat (kWh/m2), cold."""
+
+    year: int
+    peak_w_m2: float
+    heat_kwh_m2: float
+    coldest_hour_c: float
+    spells: tuple[Spell, ...]
 
 
 @dataclass(frozen=True)
@@ -118,6 +130,40 @@ def return_levels(yearly_max: Floats, periods: tuple[float, ...] = RETURN_YEARS)
     return tuple(levels)
 
 
+def year_load(time: Times, load: Floats, temp_air: Floats, step_s: float) -> YearLoad:
+    """Return what one year brings to the comparison: `load` (N,) W/m2 floor, `temp_air` (N,) degC outside."""
+    return YearLoad(
+        year=int(time[len(time) // 2].astype("datetime64[Y]").astype(int)) + 1970,
+        peak_w_m2=float(np.max(load)),
+        heat_kwh_m2=float(np.sum(load)) * step_s / S_PER_H / 1000.0,
+        coldest_hour_c=float(np.min(temp_air)),
+        spells=coldest_spells(time, temp_air, step_s),
+    )
+
+
+def combine(loads: Sequence[YearLoad]) -> ManyYears | None:
+    """Return the spread over years that were computed one by one, or None for less than two."""
+    if len(loads) < 2:
+        return None
+    peaks = np.array([one.peak_w_m2 for one in loads])
+    levels = return_levels(peaks)
+    if levels:
+        note = f"Gumbel law by L-moments (Hosking 1990) on {len(loads)} yearly peaks; 90 % interval by its exact pivot"
+    else:
+        note = f"return level not computed: {len(loads)} years, {MIN_YEARS} are needed"
+    spells = [spell for one in loads for spell in one.spells]
+    coldest = [min((s for s in spells if s.hours == h), key=lambda s: s.mean_c) for h in SPELL_H]
+    return ManyYears(
+        years=tuple(one.year for one in loads),
+        peak_w_m2=peaks,
+        annual_heat_kwh_m2=np.array([one.heat_kwh_m2 for one in loads]),
+        coldest_hour_c=np.array([one.coldest_hour_c for one in loads]),
+        spells=tuple(coldest),
+        levels=levels,
+        note=note,
+    )
+
+
 def many_years(time: Times, load: Floats, temp_air: Floats, step_s: float) -> ManyYears | None:
     """Return what several years in a row say, or None for less than two whole calendar years.
 
@@ -125,27 +171,7 @@ def many_years(time: Times, load: Floats, temp_air: Floats, step_s: float) -> Ma
     year with less than 95 % of its hours is left out.
     """
     label = time.astype("datetime64[Y]").astype(int) + 1970
-    step_h = step_s / S_PER_H
     found, counts = np.unique(label, return_counts=True)
-    whole = [int(y) for y, c in zip(found, counts, strict=True) if c * step_h >= WHOLE_YEAR_SHARE * YEAR_H]
-    if len(whole) < 2:
-        return None
-    rows = [label == y for y in whole]
-    peaks = np.array([load[r].max() for r in rows])
-    levels = return_levels(peaks)
-    if levels:
-        note = (
-            f"Gumbel law by L-moments (Hosking 1990) on {len(whole)} yearly peaks; "
-            "90 % interval by its exact pivot"
-        )
-    else:
-        note = f"return level not computed: {len(whole)} years, {MIN_YEARS} are needed"
-    return ManyYears(
-        years=tuple(whole),
-        peak_w_m2=peaks,
-        annual_heat_kwh_m2=np.array([float(load[r].sum()) * step_h / 1000.0 for r in rows]),
-        coldest_hour_c=np.array([temp_air[r].min() for r in rows]),
-        spells=coldest_spells(time, temp_air, step_s),
-        levels=levels,
-        note=note,
-    )
+    least = WHOLE_YEAR_SHARE * YEAR_H * S_PER_H / step_s
+    rows = [label == year for year, count in zip(found, counts, strict=True) if count >= least]
+    return combine([year_load(time[r], load[r], temp_air[r], step_s) for r in rows])

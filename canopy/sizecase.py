@@ -15,6 +15,7 @@ from canopy.emitters import flow_temperature
 from canopy.energy import Supply, energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import store_sizes
+from canopy.returns import ManyYears
 from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size
 from weather.record import Weather
 
@@ -46,11 +47,13 @@ def size_candidate(
     shared: SizingShared,
     u_value: float | None = None,
     solver: Solver | None = None,
+    many: ManyYears | None = None,
 ) -> tuple[Sizing, DesignNight | None]:
     """Return sizing and design night; `heating` are the plan's `canopy.study.HeatingKeys`.
 
     Solves the design night (screens open and drawn), and the year again with the proposed boiler where the
-    unlimited run asked for more. `u_value` replaces the nominal U of the paper calculation.
+    unlimited run asked for more. `u_value` replaces the nominal U of the paper calculation; `many` what the other
+    years of the study gave (`returns.combine`).
     """
     weather, area = shared.weather, case.shell.floor_area_m2
     night = design_night(case, shared.outside, solver, u_value)
@@ -75,6 +78,7 @@ def size_candidate(
         weather.step_s,
         capped=bool(np.isfinite(case.heating.capacity_w_m2)),
         pipes_short_h=_pipes_short_h(case, result),
+        many=many,
         stores=stores,
     )
     finite = None

@@ -107,19 +107,21 @@ def size(
     step_s: float = S_PER_H,
     capped: bool = False,
     pipes_short_h: float = 0.0,
+    many: ManyYears | None = None,
     stores: Callable[[Floats, float], StoreSizes] = store_sizes,
 ) -> Sizing:
     """Return the sizing of one candidate from its hourly heat.
 
     `heat` (N,) W/m2 floor over the whole record, `time` (N,) start of each step, `temp_outside` (N,) degC;
-    `typical`: months from different years. Percentiles are over all hours, scaled to the record's length.
+    `typical`: months from different years; `many` what other years gave (a record of several years in a row
+    gives it by itself). Percentiles are over all hours, scaled to the record's length.
     """
     q = np.asarray(heat, float)
     hours = len(q) * step_s / S_PER_H
     years = hours / YEAR_H
     peak = int(np.argmax(q))
     loads = exceeded(q, EXCEEDED_99_6_H), exceeded(q, EXCEEDED_99_H)
-    several = None if typical else many_years(time, q, temp_outside, step_s)
+    several = many if many is not None or typical else many_years(time, q, temp_outside, step_s)
     night_w = 0.0 if night is None else night.design_w_m2
     design, basis = choose(night_w, loads[0], several)
     total = float(q.sum()) * step_s / S_PER_H / 1000.0

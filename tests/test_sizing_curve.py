@@ -12,7 +12,7 @@ from scipy.optimize import brentq
 
 from canopy.degreedays import degree_days
 from canopy.loadcurve import base_load, covered, exceeded, load_curve
-from canopy.returns import coldest_spells, gumbel_fit, many_years, return_levels
+from canopy.returns import coldest_spells, combine, gumbel_fit, many_years, return_levels, year_load
 
 RNG = np.random.default_rng(11)
 YEAR = np.arange("2021-01-01", "2022-01-01", dtype="datetime64[h]").astype("datetime64[s]")
@@ -127,6 +127,11 @@ def test_many_years_and_not_computed() -> None:
     by_year = frame.resample("YS")
     assert years.peak_w_m2 == pytest.approx(by_year["q"].max().to_numpy())
     assert years.annual_heat_kwh_m2 == pytest.approx(by_year["q"].sum().to_numpy() / 1000.0)
+    parts = [time.astype("datetime64[Y]") == np.datetime64(str(y)) for y in years.years]
+    one_by_one = combine([year_load(time[r], load[r], temp[r], 3600.0) for r in parts])
+    assert one_by_one is not None
+    assert one_by_one.years == (2001, 2002, 2003, 2004)
+    assert one_by_one.peak_w_m2 == pytest.approx(years.peak_w_m2)
     rolling = frame["t"].rolling(24).mean()
     spell = next(s for s in coldest_spells(time, temp, 3600.0) if s.hours == 24)
     assert spell.mean_c == pytest.approx(rolling.min(), abs=1e-9)
