@@ -148,7 +148,9 @@ def combine(loads: Sequence[YearLoad]) -> ManyYears | None:
     peaks = np.array([one.peak_w_m2 for one in loads])
     levels = return_levels(peaks)
     if levels:
-        note = f"Gumbel law by L-moments (Hosking 1990) on {len(loads)} yearly peaks; 90 % interval by its exact pivot"
+        note = (
+            f"Gumbel law by L-moments (Hosking 1990), {len(loads)} yearly peaks; 90 % interval by its pivot"
+        )
     else:
         note = f"return level not computed: {len(loads)} years, {MIN_YEARS} are needed"
     spells = [spell for one in loads for spell in one.spells]

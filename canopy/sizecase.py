@@ -52,8 +52,8 @@ def size_candidate(
     """Return sizing and design night; `heating` are the plan's `canopy.study.HeatingKeys`.
 
     Solves the design night (screens open and drawn), and the year again with the proposed boiler where the
-    unlimited run asked for more. `u_value` replaces the nominal U of the paper calculation; `many` what the other
-    years of the study gave (`returns.combine`).
+    unlimited run asked for more. `u_value` replaces the nominal U of the paper calculation; `many` is what
+    the other years of the study gave (`returns.combine`).
     """
     weather, area = shared.weather, case.shell.floor_area_m2
     night = design_night(case, shared.outside, solver, u_value)
