@@ -5,7 +5,7 @@ Axes: B solar bands, N hours, L covering layers, S screens. Every W/m2 is per m2
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
@@ -40,6 +40,8 @@ class HouseTransmission:
     structure_sky: Floats  # (B, N) the same per unit of outside diffuse
     return_down: Floats  # (B,) share of light going up from the crop that the house sends down again
     sunny: Floats  # (N,) share of the crop plane that the straight beam reaches
+    covering_up: Floats = field(default_factory=lambda: np.zeros((1, 1)))
+    # ^ (L, B) of light going up from the crop, absorbed in each covering layer
 
 
 @dataclass(frozen=True)
