@@ -14,6 +14,7 @@ from weather.record import Bools, Finding, Floats, Times
 
 HOUR_S: Final = 3600.0
 LEAST_SHARE: Final = 0.5  # an hour with less of it covered by readings is a gap
+LEAST_HOURS: Final = 24
 MAX_HOURS: Final = 60 * 8784  # sixty years
 
 
@@ -35,7 +36,10 @@ def to_hours(raw: RawWeather, start: Times) -> Hours:
     """
     if len(start) == 0:
         raise UserError(f"{raw.source}: no rows")
-    return _typical_hours(raw, start) if raw.typical else _real_hours(raw, start)
+    hours = _typical_hours(raw, start) if raw.typical else _real_hours(raw, start)
+    if len(hours.time) < LEAST_HOURS:
+        raise UserError(f"{raw.source}: {len(hours.time)} hours, at least {LEAST_HOURS} are needed")
+    return hours
 
 
 def _typical_hours(raw: RawWeather, start: Times) -> Hours:
