@@ -7,6 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from canopy.coveringfigures import figures
 from canopy.run import CandidateRun, Run
 from reports import sentences as say
 from reports.blocks import Figure, Points, Row, Section, Table, Text
@@ -73,13 +74,15 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
     """Return the table that keeps apart what comes from the covering and what from the house."""
     body, lines = [], []
     for at, (one, cand, mark) in enumerate(zip(rows, run.candidates, marks_of(run), strict=True)):
-        shell = cand.shell
+        shell, sheet = cand.shell, figures(cand.covering)
         body.append(
             Row(
                 one.name,
                 (
-                    percent(one.sheet_par, 1),
-                    percent(cand.covering.haze),
+                    percent(sheet.par_hemispherical, 1),
+                    percent(sheet.haze),
+                    percent(sheet.thermal_transmittance),
+                    show.bare(sheet.u_value_w_m2_cover_k, "W/m2/K"),
                     percent(one.house_par / one.sheet_par if one.sheet_par > 0 else float("nan"), 1),
                     number(shell.roof_ratio + shell.wall_ratio, 2),
                     number(shell.leakage_per_hour, 2),
@@ -95,15 +98,17 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
         "What comes from the covering, what from the house",
         (
             "candidate",
-            "covering: diffuse PAR through the sheet",
-            "covering: haze",
-            "house: of that, left by shape and structure",
-            "house: covering per floor",
-            "house: leakage",
-            "house: heat lost by leakage",
+            "covering: passes PAR, diffuse",
+            "haze",
+            "passes long-wave",
+            "U-value",
+            "house: leaves of that PAR",
+            "covering per floor",
+            "leakage",
+            "heat lost by leakage",
         ),
         tuple(body),
-        ("", "", "", "", "m²/m²", "per hour", show.text("kWh/m2")),
+        ("", "", "", "", show.text("W/m2/K"), "", "m²/m²", "per hour", show.text("kWh/m2")),
     )
     blocks: list[Text | Table | Points] = [table]
     if lines:
@@ -111,8 +116,7 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
             Text(
                 (
                     "Not every candidate stands on the same house. Where it does not, part of the difference "
-                    "in light, "
-                    "leakage and heat belongs to the house and not to the covering:",
+                    "in light, leakage and heat belongs to the house and not to the covering:",
                 )
             )
         )

@@ -13,6 +13,7 @@ from reports.display import Display, number
 from reports.figures import marks_of
 from reports.figures_climate import climate_figure
 from reports.method import METHOD
+from reports.ranges import range_table
 from reports.summary import Summary
 
 TEMPERATURES = ("temp_air_min_c", "temp_air_mean_c", "temp_air_max_c", "leaf_min_c", "leaf_sunlit_max_c")
@@ -142,6 +143,9 @@ def inputs(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     )
     notes = [f"{one.plan.name}: {note}" for one in run.candidates for note in (*one.notes, *one.heat.notes)]
     blocks: list[Block | Each | Chooser] = [Text(lead, lead=True), _input_table(run), _sources(run)]
+    ranges = range_table(run, show)
+    if ranges is not None:
+        blocks.append(ranges)
     if notes or run.notes:
         blocks.append(Text(("Assumptions made on the way:",)))
         blocks.append(Points((*run.notes, *dict.fromkeys(notes))))

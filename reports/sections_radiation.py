@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import pairwise
 
 import numpy as np
 
 from canopy.bands import THERMAL
+from canopy.coveringfigures import whole_thermal
 from canopy.longwave import band_emission
 from canopy.run import CandidateRun, Run
 from reports import sentences as say
@@ -25,6 +27,7 @@ def bands(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         (
             Text((band_words(b, r.name),)),
             band_table(b, r.name, show),
+            Text((thermal_words(one),)),
             thermal_table(run, one, show),
         )
         for b, r, one in zip(budgets, rows, run.candidates, strict=True)
@@ -37,34 +40,37 @@ def bands(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     )
 
 
+def _band_names() -> list[str]:
+    cuts = THERMAL.edges[1:-1]
+    between = [f"{low:g}–{high:g} µm" for low, high in pairwise(cuts)]
+    return [f"below {cuts[0]:g} µm", *between, f"above {cuts[-1]:g} µm"]
+
+
 def thermal_table(run: Run, one: CandidateRun, show: Display) -> Table:
     """Return what the covering does in each thermal band, and what sky and leaves send there by night."""
     dark = run.hours[~one.case.outside.sun_up[run.hours]]
     where = dark if len(dark) else run.hours
     sky = one.case.outside.sky_bands[:, where].mean(1)
-    edges = (0.0, *THERMAL.edges[1:-1], np.inf)
     black = band_emission(one.heat.temp_leaf[where])[0].mean(1)
-    dry, wet = one.covering.thermal_dry, one.covering.thermal_wet
-    rows = []
-    for at in range(len(THERMAL)):
-        low, high = edges[at], edges[at + 1]
-        name = (
-            f"{low:g}–{high:g} µm"
-            if low > 0 and np.isfinite(high)
-            else (f"below {high:g} µm" if low == 0 else f"above {low:g} µm")
+    dry, wet = whole_thermal(one.covering.thermal_dry), whole_thermal(one.covering.thermal_wet)
+    columns = (
+        dry.transmit,
+        wet.transmit,
+        dry.emissivity_outside,
+        dry.emissivity_inside,
+        wet.emissivity_inside,
+    )
+    rows = tuple(
+        Row(
+            name,
+            (
+                show.bare(float(sky[at]), "W/m2", 1),
+                show.bare(float(black[at]), "W/m2", 1),
+                *(percent(float(values[at]), 1) for values in columns),
+            ),
         )
-        rows.append(
-            Row(
-                name,
-                (
-                    show.bare(float(sky[at]), "W/m2", 1),
-                    show.bare(float(black[at]), "W/m2", 1),
-                    *(percent(float(t)) for t in (dry.transmit[0, at], wet.transmit[-1, at])),
-                    percent(float(1 - dry.transmit[0, at] - dry.reflect_outside[0, at])),
-                    percent(float(1 - dry.transmit[-1, at] - dry.reflect_inside[-1, at])),
-                ),
-            )
-        )
+        for at, name in enumerate(_band_names())
+    )
     unit = show.text("W/m2")
     return Table(
         f"Long-wave by band, mean of the {'nights' if len(dark) else 'hours'}: {one.plan.name}",
@@ -72,13 +78,26 @@ def thermal_table(run: Run, one: CandidateRun, show: Display) -> Table:
             "band",
             "sky sends down",
             "black leaves send up",
-            "outer layer passes, dry",
-            "inner layer passes, wet",
+            "covering passes, dry",
+            "passes, wet inside",
             "emissivity to the sky",
-            "emissivity to the crop, dry",
+            "to the crop, dry",
+            "to the crop, wet",
         ),
-        tuple(rows),
-        ("", unit, unit, "", "", "", ""),
+        rows,
+        ("", unit, unit, "", "", "", "", ""),
+    )
+
+
+def thermal_words(one: CandidateRun) -> str:
+    """Return in a sentence what the covering does in the window of the sky."""
+    at = THERMAL.names.index("8-14")
+    dry, wet = whole_thermal(one.covering.thermal_dry), whole_thermal(one.covering.thermal_wet)
+    return (
+        f"In the window of the sky (8–14 µm), where a clear night is coldest, this covering passes "
+        f"{percent(float(dry.transmit[at]))} of the long-wave when dry and "
+        f"{percent(float(wet.transmit[at]))} when "
+        "wet inside."
     )
 
 

@@ -10,6 +10,7 @@ import numpy as np
 from canopy.run import Run
 from canopy.seasonal import Seasonal
 from reports.display import NONE, Display, number, percent
+from reports.ranges import range_words
 from reports.summary import FULL_YEAR_DAYS, Summary, beaten, dark_months
 
 MONTHS: Final = (
@@ -195,7 +196,8 @@ def doubts(run: Run) -> tuple[str, ...]:
             "such models "
             "miss single hours by 14-20 W/m² (root mean square on measured records)."
         )
-    return tuple(lines)
+    ranges = range_words(run)
+    return tuple(lines) if ranges is None else (*lines, ranges)
 
 
 def value_words(value: Any) -> str:

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import json
 import re
+from dataclasses import replace
 from html.parser import HTMLParser
 from itertools import pairwise
 
 import pytest
 
+from canopy import library
 from reports.page import json_for_script, page_text
 from tests.reportcase import Fake, fakes, make_run
 
@@ -205,3 +207,14 @@ def test_one_candidate_without_a_crop() -> None:
     reader = read(page_text(make_run(fakes(1), lai=0.0)))
     assert not any(tag == "select" for tag, _ in reader.tags)
     assert "Light: 75\u202f% of the outside PAR" in "".join(reader.words)
+
+
+def test_ranges_of_library_coverings_are_said() -> None:
+    run = make_run(fakes(2))
+    named = replace(run.candidates[0].covering, name="glass-clear-4", title="Clear float glass 4 mm")
+    first = replace(run.candidates[0], covering=named)
+    words = "".join(read(page_text(replace(run, candidates=(first, run.candidates[1])))).words)
+    assert "points around the figure used" in words
+    figure = library.row("glass-clear-4").figures["par_hemispherical"]
+    assert f"{100 * figure.value:.1f}\u202f% ({100 * figure.low:.1f} to {100 * figure.high:.1f})" in words
+    assert "points around the figure used" not in "".join(read(page_text(run)).words)
