@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Final
 
 import numpy as np
@@ -106,6 +107,12 @@ def _reduced(years: float) -> float:
     return float(-np.log(-np.log1p(-1.0 / years)))
 
 
+@lru_cache(maxsize=8)
+def _drawn_fits(count: int) -> tuple[Floats, Floats]:
+    """Return location and scale fitted to many samples of the standard Gumbel law."""
+    return _fit(np.random.default_rng(PIVOT_SEED).gumbel(size=(PIVOT_DRAWS, count)))
+
+
 def return_levels(yearly_max: Floats, periods: tuple[float, ...] = RETURN_YEARS) -> tuple[ReturnLevel, ...]:
     """Return levels of yearly maxima with 90 % intervals; needs at least `MIN_YEARS` values.
 
@@ -118,8 +125,7 @@ def return_levels(yearly_max: Floats, periods: tuple[float, ...] = RETURN_YEARS)
     if len(x) < MIN_YEARS:
         return ()
     location, scale = gumbel_fit(x)
-    draws = np.random.default_rng(PIVOT_SEED).gumbel(size=(PIVOT_DRAWS, len(x)))
-    loc, sc = _fit(draws)
+    loc, sc = _drawn_fits(len(x))
     tail = (1.0 - CONFIDENCE) / 2.0
     levels = []
     for years in periods:
