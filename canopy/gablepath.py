@@ -101,11 +101,11 @@ class Section:
 
 def section(house: House, rays: Rays) -> Section:
     """Return the section of a gable house for every direction."""
-    pitch = np.tan(np.radians(max(house.pitch, 1e-10)))
-    other = np.tan(np.radians(max(house.pitch_other, 1e-10)))
-    front = np.where(rays.other_side, other, pitch)
-    rear = np.where(rays.other_side, pitch, other)
-    rise = float(house.span_width * pitch * other / (pitch + other))
+    tan = np.tan(np.radians(np.maximum([house.pitch, house.pitch_other], 1e-10)))
+    side = rays.other_side.astype(int)
+    front: Floats = tan[side]
+    rear: Floats = tan[1 - side]
+    rise = float(house.span_width * tan[0] * tan[1] / (tan[0] + tan[1]))
     gutter = house.gutter_depth > 0.0
     ridge = house.ridge_depth > 0.0
     return Section(

@@ -2,8 +2,8 @@
 
 Covering, screens (outermost first) and stand lie over each other like sheets of a stack. The beam goes down
 through them once; the diffuse light goes up and down without end, which the adding method sums in closed form
-(two-flux layers; Stokes 1862 for plates). Screens lie level at the gutter; light that comes in through the side
-walls passes a side screen of the same fabric.
+(two-flux layers; Stokes 1862 for plates). Screens lie level at the gutter; light that comes in through the
+side walls passes a side screen of the same fabric.
 """
 
 from __future__ import annotations
@@ -21,6 +21,7 @@ from canopy.structure import STRUCTURE_ABSORPTANCE
 from weather.record import Weather
 
 Floats = NDArray[np.float64]
+Rows = NDArray[np.intp]
 
 
 @dataclass(frozen=True)
@@ -108,7 +109,7 @@ def _under_covering(
     outside_beam: Floats,
     outside_diffuse: Floats,
     house: HouseTransmission,
-    lit: NDArray[np.intp],
+    lit: Rows,
     paint: Paint | None,
 ) -> tuple[Floats, Floats]:
     """Return beam and diffuse light under the covering before any of it comes back from below."""
@@ -126,13 +127,12 @@ def _covering(
     outside_diffuse: Floats,
     up: Floats,
     house: HouseTransmission,
-    lit: NDArray[np.intp],
+    lit: Rows,
     paint: Paint | None,
 ) -> Floats:
     """Return what each layer of the covering keeps, (L, B, D); the paint's share goes to the outermost."""
-    kept: Floats = (
-        house.covering_beam[:, :, lit] * outside_beam + house.covering_sky[:, :, lit] * outside_diffuse
-    )
+    kept: Floats = house.covering_beam[:, :, lit] * outside_beam
+    kept += house.covering_sky[:, :, lit] * outside_diffuse
     if paint is not None:
         kept = kept * paint.through[:, lit]
         kept[0] += paint.absorbed[:, lit] * (outside_beam + outside_diffuse)
@@ -188,7 +188,7 @@ def _exchange(
     sheets: list[_Sheet],
     house_back: Floats,
     stand: StandResponse,
-    lit: NDArray[np.intp],
+    lit: Rows,
 ) -> _Flux:
     """Return the flux at every level, all returns summed.
 
@@ -219,7 +219,7 @@ def _exchange(
     return _Flux(beams, down, up)
 
 
-def _parts(flux: _Flux, stand: StandResponse, lit: NDArray[np.intp]) -> dict[str, Floats]:
+def _parts(flux: _Flux, stand: StandResponse, lit: Rows) -> dict[str, Floats]:
     """Return what leaves and ground take of the light at the top of the stand."""
     beam, down = flux.beam[-1], flux.down[-1]
     return {

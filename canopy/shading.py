@@ -1,4 +1,4 @@
-"""Seasonal shading paint: sprayed on the covering by date, worn off by weather, scattering what it lets through."""
+"""Seasonal shading paint: sprayed on by date, worn off by weather, scattering what it lets through."""
 
 from __future__ import annotations
 
@@ -15,15 +15,15 @@ from weather.record import Weather
 Floats = NDArray[np.float64]
 
 PAINT_BAND_FACTOR = (1.15, 1.0, 0.97, 0.92, 0.80)
-"""Optical depth of white chalk paint per band, PAR = 1: pigment of about a micrometre scatters long waves less
-(common practice; single paints differ by .1)."""
+"""Optical depth of white chalk paint per band, PAR = 1: pigment of about a micrometre scatters long waves
+less (common practice; single paints differ by .1)."""
 PAINT_DIFFUSING = 0.7
 """Share of the beam let through by a full coat that has been scattered (common practice)."""
 FULL_SHADE = 0.5
 """Shade of PAR at which a coat counts as full."""
 PAINT_ABSORBED = 0.08
-"""Share of the light that paint holds back which it absorbs (and hands to the outer sheet); white paint reflects
-the rest (common practice)."""
+"""Share of the light that paint holds back which it absorbs (and hands to the outer sheet); white paint
+reflects the rest (common practice)."""
 
 
 @dataclass(frozen=True)
