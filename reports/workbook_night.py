@@ -1,58 +1,13 @@
-"""Two parts of the sizing sheet: fuel and electricity, and the design night step by step."""
+"""The design night on the sizing sheet: every component, one below the other, with its derivation."""
 
 from __future__ import annotations
 
 from typing import Any
 
 from canopy.designnight import DesignNight, NightLoad
-from canopy.fuel import FuelUse
 from canopy.run import CandidateRun
 from canopy.sizing import Sizing
 from reports.workbook_base import AREA_ROW, Book, cell, row_head, subtitle
-
-
-def energy_table(book: Book, sheet: Any, row: int) -> int:
-    """Write what every candidate's supplies take; returns the last row used."""
-    subtitle(book, sheet, row, "Fuel and electricity over the record, whole house")
-    end = row
-    for one in book.run.candidates:
-        bill = one.sizing.energy if one.sizing is not None else None
-        if bill is None:
-            continue
-        for use, paid in ((bill.boiler, bill.boiler_cost), (bill.electricity, bill.electricity_cost)):
-            if use is None:
-                continue
-            end += 1
-            book.text(sheet, end, 0, f"{one.plan.name}: {use.fuel.title}")
-            currency = f", {paid.currency}" if paid is not None and paid.currency else ""
-            cells: list[tuple[str, float | None, str]] = [
-                ("efficiency on net", use.efficiency, ""),
-                ("heat", use.heat_kwh, "kWh"),
-                ("gross", use.gross_kwh, "kWh"),
-                ("net", use.net_kwh, "kWh"),
-                _bought(book, use),
-                ("CO2 (biogenic)" if use.fuel.biogenic else "CO2", use.co2_kg, "kg"),
-                ("highest draw, gross", use.peak_kw, "kW"),
-                (f"cost{currency}", None if paid is None else paid.total, ""),
-            ]
-            for k, (words, value, unit) in enumerate(cells, start=2):
-                text = book.shown(unit).text
-                book.text(sheet, end, k, f"{words}, {text}" if text else words, book.unit)
-                if value is None:
-                    book.text(sheet, end + 1, k, "not computed")
-                else:
-                    book.put(sheet, end + 1, k, float(value), unit)
-            end += 1
-    return end
-
-
-def _bought(book: Book, use: FuelUse) -> tuple[str, float, str]:
-    """Return the amount as it is sold: gas in therms where units are US, electricity in kWh everywhere."""
-    if use.fuel.unit == "kWh":
-        return "bought, kWh", use.amount, ""
-    if use.fuel.unit == "m3" and book.system == "us":
-        return "bought (gross)", use.gross_kwh, "kWh"
-    return "bought", use.amount, use.fuel.unit
 
 
 def night_table(book: Book, sheet: Any, row: int, at: int, one: CandidateRun) -> int:

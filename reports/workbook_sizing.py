@@ -10,7 +10,8 @@ from canopy.cautions import CAUTIONS
 from canopy.run import CandidateRun
 from canopy.sizing import Sizing
 from reports.workbook_base import AREA_ROW, Book, cell, colour, row_head, span, subtitle
-from reports.workbook_night import energy_table, night_table
+from reports.workbook_energy import energy_table
+from reports.workbook_night import night_table
 
 SIZES: Final = (
     ("peak_w_m2", "highest simulated hour", "W/m2"),

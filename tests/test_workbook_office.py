@@ -6,6 +6,7 @@ import csv
 import shutil
 import subprocess
 import warnings
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -14,6 +15,8 @@ import openpyxl
 import pytest
 
 from canopy.columns import DAILY
+from canopy.energy import Supply, energy
+from canopy.energykeys import HeatPumpKeys, TariffKeys
 from canopy.run import Run
 from reports.csvtables import DAILY_DIGITS, OTHER_DIGITS, daily_units, write_daily, write_monthly
 from reports.us_units import shown
@@ -65,7 +68,20 @@ def zero_cached(monkeypatch: pytest.MonkeyPatch) -> None:
 
 @pytest.fixture(scope="module")
 def run() -> Run:
-    return make_run(fakes(3), title=NASTY, months=(1, 2, 12))
+    made = make_run(fakes(3), title=NASTY, months=(1, 2, 12))
+    one = made.candidates[1]
+    prices = TariffKeys(
+        price_per_kwh=0.30, night_price_per_kwh=0.20, capacity_charge_per_kw_year=60.0, contract_kw=200.0,
+        over_contract_per_kw_year=90.0, standing_per_year=500.0, currency="=EUR",
+    )  # fmt: skip
+    pump = HeatPumpKeys(source="air", capacity_w_m2=60.0, flow_max_c=55.0)
+    supply = Supply("fuel-oil", None, 0.09, heat_pump=pump, heat_pump_tariff=prices)
+    heat, air = one.heat, made.weather
+    flow = np.minimum(heat.temp_pipe, 54.0)
+    clock = np.arange(8760) % 24.0
+    used = energy(heat.heat_delivered, flow, air.temp_air, air.relative_humidity, clock, 4800.0, supply)
+    turned = replace(one, sizing=replace(one.sizing, energy=used))
+    return replace(made, candidates=(made.candidates[0], turned, made.candidates[2]))
 
 
 @pytest.fixture(scope="module")
@@ -173,6 +189,29 @@ def test_sizing_and_design_night(books: dict[str, Any], run: Run) -> None:
     assert totals[1] == pytest.approx(sum(p.w_m2 for p in night.components), rel=1e-12)
     area = run.candidates[0].house.floor_area
     assert totals[2] == pytest.approx(totals[1] * area / 1000.0, rel=1e-12)
+
+
+def all_rows(sheet: Any, label: str) -> list[list[Any]]:
+    """Return every row that begins with a label."""
+    return [[c.value for c in row] for row in sheet.iter_rows() if row[0].value == label]
+
+
+def test_supplies_and_costs(books: dict[str, Any], run: Run) -> None:
+    si, us = books["si"]["Sizing"], books["us"]["Sizing"]
+    bill = run.candidates[1].sizing.energy
+    boiler, power = all_rows(si, "cost, together")
+    assert boiler[3] == pytest.approx(bill.boiler_cost.total)
+    assert power[3] == pytest.approx(bill.electricity_cost.total)
+    assert power[2] is None
+    assert all_rows(si, "currency")[1][3] == "=EUR"
+    litres, gallons = all_rows(si, "bought")[0][3], all_rows(us, "bought")[0][3]
+    assert litres == pytest.approx(bill.boiler.amount)
+    assert gallons == pytest.approx(litres / 3.785412, rel=1e-6)
+    # gas: m3 in SI, therms of gross heating value (100 000 Btu) in US units
+    gas = run.candidates[0].sizing.energy.boiler
+    assert all_rows(si, "bought")[0][2] == pytest.approx(gas.amount)
+    assert all_rows(us, "bought")[0][2] == pytest.approx(gas.gross_kwh * 3412.142 / 1e5, rel=1e-6)
+    assert all_rows(si, "seasonal performance")[0][3] == pytest.approx(bill.pump.seasonal)
 
 
 def test_us_units(books: dict[str, Any], run: Run) -> None:
