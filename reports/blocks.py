@@ -77,7 +77,16 @@ class Figure:
     toggles: bool = False  # the key hides and shows candidates
 
 
-Block = Text | Points | Table | Figure
+@dataclass(frozen=True)
+class Listing:
+    """A text shown as it is, behind a click."""
+
+    shape: ClassVar[str] = "listing"
+    title: str
+    text: str
+
+
+Block = Text | Points | Table | Figure | Listing
 
 
 @dataclass(frozen=True)

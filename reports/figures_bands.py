@@ -181,5 +181,5 @@ def band_words(b: BandBudget, name: str) -> str:
         f"{percent(nir_leaves)} of the NIR "
         "(far-red included); of the sunlight that warms leaves and floor, "
         f"{number(100 * b.crop[nir].sum() / max(heat, 1e-12))}\u202f% "
-        "is NIR in the leaves, which heats the crop and drives no growth."
+        "is NIR in the leaves, which warms the crop and feeds hardly any photosynthesis."
     )

@@ -102,7 +102,7 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
             "haze",
             "passes long-wave",
             "U-value",
-            "house: leaves of that PAR",
+            "house: lets through",
             "covering per floor",
             "leakage",
             "heat lost by leakage",

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from pathlib import Path
 
 from canopy.cautions import CAUTIONS
 from canopy.run import Run
 from reports import sentences as say
-from reports.blocks import Block, Chooser, Each, Points, Row, Section, Table, Text
+from reports.blocks import Block, Chooser, Each, Listing, Points, Row, Section, Table, Text
 from reports.csvtables import zone_offset
 from reports.display import Display, number
 from reports.figures import marks_of
@@ -157,6 +158,7 @@ def inputs(run: Run, rows: Sequence[Summary], show: Display) -> Section:
             words=True,
         )
     )
+    blocks.append(Listing(f"The study as read: {Path(run.study.label).name}", run.study.text))
     return Section("inputs", "Inputs and method", "What was computed, and how?", tuple(blocks))
 
 

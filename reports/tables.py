@@ -110,6 +110,8 @@ def write_all(run: Run, out: Path, progress: Progress | None = None) -> tuple[Pa
 
 def _write_files(run: Run, work: Path, progress: Progress) -> list[str]:
     """Write all files into a folder; large tables and packing run beside the page and the workbook."""
+    from xlsxwriter.exceptions import FileCreateError
+
     from reports.page import packed_plotly, write_page
     from reports.sizingview import sizing_row
     from reports.workbook import write_workbook
@@ -120,7 +122,10 @@ def _write_files(run: Run, work: Path, progress: Progress) -> list[str]:
         packing = beside.submit(packed_plotly)
         hourly = beside.submit(write_hourly, run, work / "hourly.csv", parquet)
         progress("workbook")
-        write_workbook(run, work / "workbook.xlsx", run.study.keys.units)
+        try:
+            write_workbook(run, work / "workbook.xlsx", run.study.keys.units)
+        except FileCreateError as error:  # holds the OSError that xlsxwriter met
+            raise OSError(f"workbook.xlsx: {error}") from error
         progress("tables")
         write_daily(run, work / "daily.csv")
         write_monthly(run, work / "monthly.csv")

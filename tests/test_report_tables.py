@@ -13,6 +13,7 @@ import pandas as pd
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from xlsxwriter.exceptions import FileCreateError
 
 from canopy.columns import COLUMNS, DAILY, GAINS, LOSSES, STORES
 from canopy.run import Run
@@ -230,6 +231,18 @@ def test_a_failing_write_leaves_the_earlier_run_alone(
     with pytest.raises(UserError, match="No space left on device"):
         write_all(run, tmp_path)
     assert _snapshot(tmp_path) == before
+
+
+def test_a_workbook_that_cannot_be_closed_is_said_in_one_line(
+    run: Run, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def no_room(run: Run, path: Path, units: str) -> None:
+        raise FileCreateError(OSError(28, "No space left on device"))
+
+    monkeypatch.setattr("reports.workbook.write_workbook", no_room)
+    with pytest.raises(UserError, match=r"workbook\.xlsx.*No space left"):
+        write_all(run, tmp_path / "new")
+    assert list(tmp_path.iterdir()) == []
 
 
 @pytest.mark.parametrize("fails_at", [3, 8, 9, 12, 16])
