@@ -1,0 +1,121 @@
+"""Time in the solver: a Newton step of the whole record marched through its stores and the soil.
+
+A step d of hour t answers to the step of the hour before through the stores, the film and the soil's modes.
+The march runs the steps of every chunk (day) at once. Chunk ends hand on to the next chunk in a second
+sweep; what is left by then is far below the step and the next Newton pass takes it up. The modes
+themselves are then recomputed exactly, and close on themselves where the record is periodic.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from canopy.heatmodel import Model
+
+Floats = NDArray[np.float64]
+
+SWEEPS = 2
+
+
+def run_modes(model: Model, drive: Floats) -> Floats:
+    """Soil modes at the end of every step, (M, N), for a film temperature T* (N,); exact and periodic."""
+    soil, order = model.soil, model.order
+    steps, chunks = order.steps, order.chunks
+    keep, push = _first_step(model)
+    forcing = (
+        soil.drive[:, None] * drive + soil.deep[:, None] * model.deep
+    ).reshape(len(soil.keep), steps, chunks)
+    if not model.case.periodic:
+        forcing[:, 0, 0] *= push[:, 0] / soil.drive
+    out = np.empty_like(forcing)
+    now = forcing[:, 0].copy()
+    out[:, 0] = now
+    for k in range(1, steps):
+        now = soil.keep[:, None] * now + forcing[:, k]
+        out[:, k] = now
+    ends = link_chunks(out[:, -1], soil.keep**steps, model.case.periodic)
+    starts = np.roll(ends, 1, axis=1)
+    if not model.case.periodic:
+        starts[:, 0] = 0.0
+    power = soil.keep[:, None] ** np.arange(1, steps + 1)
+    out += power[:, :, None] * starts[:, None, :]
+    del keep
+    return out.reshape(len(soil.keep), -1)
+
+
+def link_chunks(ends: Floats, keep: Floats, periodic: bool) -> Floats:
+    """Turn chunk ends from a zero start into true ends: y_d = e_d + keep y_{d-1}, (M, D); doubling."""
+    total = ends.copy()
+    factor, shift, chunks = keep.copy(), 1, ends.shape[1]
+    while shift < chunks:
+        total[:, shift:] = total[:, shift:] + factor[:, None] * total[:, :-shift]
+        factor = factor * factor
+        shift *= 2
+    if periodic:
+        start = total[:, -1] / (1.0 - keep**chunks)
+        total = total + keep[:, None] ** np.arange(1, chunks + 1) * start[:, None]
+    return total
+
+
+def _first_step(model: Model) -> tuple[Floats, Floats]:
+    """keep and drive (M, D) in the first step of each chunk: a record without memory starts settled."""
+    soil, chunks = model.soil, model.order.chunks
+    keep = np.repeat(soil.keep[:, None], chunks, axis=1)
+    push = np.repeat(soil.drive[:, None], chunks, axis=1)
+    if not model.case.periodic:
+        keep[:, 0] = 0.0
+        push[:, 0] = soil.drive / (1.0 - soil.keep)
+    return keep, push
+
+
+@dataclass(frozen=True)
+class Response:
+    """What every hour answers: `own` (R, N), to the soil's history (R, N), to the hour before (R, K, N).
+
+    Rows: the K carried quantities (stores, film) and, last, the floor.
+    """
+
+    own: Floats
+    history: Floats
+    before: Floats
+    drive_floor: Floats  # dT* per d(floor)
+    drive_history: Floats  # dT* per d(history)
+
+
+def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
+    """March a step: returns (K, N) of the carried quantities, history (N,) and drive (N,) steps."""
+    soil, order = model.soil, model.order
+    steps, chunks = order.steps, order.chunks
+    carried = r.own.shape[0] - 1
+    cut = (steps, chunks)
+    own, by_history = r.own.reshape(-1, *cut), r.history.reshape(-1, *cut)
+    before = r.before.reshape(*r.before.shape[:2], *cut)
+    floor_gain, history_gain = r.drive_floor.reshape(cut), r.drive_history.reshape(cut)
+    first_keep, first_push = _first_step(model)
+    periodic = model.case.periodic
+    state, modes = np.zeros((carried, chunks)), np.zeros((len(soil.keep), chunks))
+    out, history, drive = np.empty((carried, *cut)), np.empty(cut), np.empty(cut)
+    for _ in range(SWEEPS):
+        now, ground = state, modes
+        for k in range(steps):
+            recalled = soil.recall @ ground
+            if k == 0 and not periodic:
+                recalled[0] = 0.0
+            step = own[:, k] + by_history[:, k] * recalled
+            step += np.einsum("rkd,kd->rd", before[:, :, k], now)
+            pushed = floor_gain[k] * step[-1] + history_gain[k] * recalled
+            now = step[:-1]
+            if k == 0:
+                ground = first_keep * ground + first_push * pushed
+            else:
+                ground = soil.keep[:, None] * ground + soil.drive[:, None] * pushed
+            out[:, k], history[k], drive[k] = now, recalled, pushed
+        fresh = ground - soil.keep[:, None] ** steps * modes
+        ends = link_chunks(fresh, soil.keep**steps, periodic)
+        state, modes = np.roll(now, 1, axis=1), np.roll(ends, 1, axis=1)
+        if not periodic:
+            state[:, 0], modes[:, 0] = 0.0, 0.0
+    return out.reshape(carried, -1), history.ravel(), drive.ravel()
