@@ -177,7 +177,13 @@ def _degree_days(book: Book, sheet: Any, row: int) -> int:
         book.put(sheet, row + 1, 2 + k, float(base), "°C")
         book.put(sheet, row + 2, 2 + k, float(days.hourly[k]), "K d")
         book.put(sheet, row + 3, 2 + k, float(days.daily_mean[k]), "K d")
-    return row + 3
+    end = row + 3
+    for spell in columns[0][2].spells:
+        end += 1
+        row_head(book, sheet, end, f"coldest mean over {spell.hours} h, and its start", "°C")
+        book.put(sheet, end, 2, spell.mean_c, "°C")
+        book.text(sheet, end, 3, str(np.datetime64(spell.start, "m")).replace("T", " "))
+    return end
 
 
 def _years(book: Book, sheet: Any, row: int) -> int:

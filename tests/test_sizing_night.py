@@ -12,11 +12,13 @@ from canopy.balance import solve
 from canopy.designnight import DesignNight, NightLoad, design_night, night_case
 from canopy.designoutside import DesignOutside, percentile_temperature
 from canopy.heatcase import HeatCase
-from canopy.sizing import rerun, size
+from canopy.returns import SPELL_H, ManyYears, Spell, YearLoad, combine
+from canopy.sizing import choose, rerun, size
 from canopy.skybands import sky_bands
 from tests.sizingcase import energy_screen, twin_film, winter_case
 
 SIGMA = 5.670374e-8
+SPELLS = tuple(Spell(h, -10.0, np.datetime64("2001-01-01", "s")) for h in SPELL_H)
 
 
 def outside(case: HeatCase, temp: float = -12.0, wind: float = 4.0, sky: float = 190.0) -> DesignOutside:
@@ -226,3 +228,33 @@ def test_short_pipes_are_said() -> None:
     assert "1 m/m2 of pipe at 60 °C give" in short.pipes_note
     # the load is what the house needs, not what the pipes can do; radiation of more pipes moves it a little
     assert short.design_w_m2 == pytest.approx(enough.design_w_m2, rel=0.05)
+
+
+def years(peaks: list[float]) -> list[YearLoad]:
+    """Return years with these peaks, W/m2."""
+    return [YearLoad(2001 + k, peak, 300.0, -10.0, ()) for k, peak in enumerate(peaks)]
+
+
+def test_size_is_the_larger_of_night_and_years() -> None:
+    assert choose(150.0, 140.0, None) == (150.0, "design night")
+    assert choose(120.0, 140.0, None) == (140.0, "simulated hours (99.6 %)")
+    assert choose(0.0, 0.0, None) == (0.0, "none")
+    few = combine_peaks([150.0, 180.0, 160.0])
+    assert choose(170.0, 140.0, few) == (180.0, "coldest of several years")
+    assert choose(190.0, 140.0, few) == (190.0, "design night")
+    peaks = [150.0, 155.0, 160.0, 148.0, 170.0, 152.0, 158.0, 149.0, 163.0, 151.0, 157.0, 166.0]
+    many = combine_peaks(peaks)
+    level, basis = choose(150.0, 140.0, many)
+    assert basis == "return level"
+    # Gumbel by L-moments, once in 20 years: location + 2.9702 scale
+    x = np.sort(peaks)
+    b1 = float(np.sum(x * np.arange(12) / 11) / 12)
+    scale = (2 * b1 - x.mean()) / np.log(2)
+    assert level == pytest.approx(x.mean() - 0.57722 * scale + 2.9702 * scale, rel=1e-5)
+
+
+def combine_peaks(peaks: list[float]) -> ManyYears:
+    """Return the spread over years with these peaks."""
+    found = combine([replace(one, spells=SPELLS) for one in years(peaks)])
+    assert found is not None
+    return found
