@@ -1,7 +1,7 @@
 """Heat through gaps and whole coverings: gas in a gap by slope and spacing, U-values of banded stacks.
 
-EN 673:2011 for the gas table, upright, 45 degree and level gaps and the boundary coefficients; Hollands, Unny,
-Raithby & Konicek (1976), J. Heat Transfer 98:189 for slopes to 60 degrees with the warm side below.
+EN 673:2011 for the gas table, upright, 45 degree and level gaps and the boundary coefficients; Hollands,
+Unny, Raithby & Konicek (1976), J. Heat Transfer 98:189 for slopes to 60 degrees, the warm side below.
 """
 
 from __future__ import annotations
@@ -47,7 +47,7 @@ _STEEP_DEG: Final = 60.0
 
 
 def gas_conductivity(mean_t_k: ArrayLike, gas: Gas = "air") -> Floats:
-    """Return conductivity of a still gas, W m-1 K-1 (EN 673 table 1, straight lines, also beyond its ends)."""
+    """Return conductivity of a still gas, W m-1 K-1 (EN 673 table 1, straight lines, beyond its ends too)."""
     return _gas(np.asarray(mean_t_k, dtype=np.float64), gas)[0]
 
 
@@ -118,7 +118,7 @@ def _power_law(ra: Floats, factor: float, power: float) -> tuple[Floats, Floats]
 
 
 def _inclined(ra: Floats, slope_deg: float) -> tuple[Floats, Floats]:
-    """Return Nu and dNu/dRa with the warm side below: Hollands et al. (1976) to 60, then to EN 673 upright."""
+    """Return Nu and dNu/dRa, warm side below: Hollands et al. (1976) to 60, then to EN 673 upright."""
     beta = np.radians(min(slope_deg, _STEEP_DEG))
     x = np.maximum(ra * np.cos(beta), 1e-12)
     first = 1.0 - 1708.0 / x
@@ -182,8 +182,7 @@ def u_value(
 ) -> float:
     """Return the U-value of a stack, W m-2 K-1 per m2 of covering, also of layers that pass long-wave.
 
-    he, hi are whole surface coefficients over bare glass (emissivity .837, EN 673 5.2); their convective part is
-    what is left after radiation at 283 K. Both sides are black at the air's temperature. Each gap takes the
+    he, hi are surface coefficients over bare glass (emissivity .837, EN 673 5.2); their convective part is what is left after radiation at 283 K. Both sides are black at the air's temperature. Each gap takes the
     same share of EN 673's 15 K.
     """
     count = len(resistance)

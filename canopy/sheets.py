@@ -9,6 +9,7 @@ from typing import Protocol
 import numpy as np
 from numpy.typing import NDArray
 
+from canopy.cells import directions
 from canopy.coats import Coat
 from canopy.materials import Material, material, reference_sunlight
 from canopy.sheet import Complexes, Floats, Passage, cosine_inside, face, grazing, join, passing
@@ -205,6 +206,26 @@ def from_normal(
     back = front if reflect_inner is None else np.asarray(reflect_inner, dtype=np.float64)
     r1, r2, crossing = face_powers(t, front, back)
     return EquivalentSheet(index_of(r1), index_of(r2), crossing, wavelength_um, edges_um, haze)
+
+
+def from_hemispherical(
+    transmit: Floats, index: float, *, edges_um: Floats | None = None, wavelength_um: Floats | None = None
+) -> EquivalentSheet:
+    """Return the bare-faced sheet of this index that has these transmittances (W,) for isotropic radiation.
+
+    Values above what the faces alone let through are taken as that limit (nothing absorbed).
+    """
+    t = np.asarray(transmit, dtype=np.float64)
+    n = np.full(t.shape, float(index))
+    where = directions()
+    at = np.arange(t.size, dtype=np.float64)
+    low, high = np.zeros(t.shape), np.ones(t.shape)
+    for _ in range(50):
+        middle = 0.5 * (low + high)
+        trial = EquivalentSheet(n, n, middle, wavelength_um=at).passage(at, where.theta)
+        below = trial.down.mean(axis=0) @ where.weights < t
+        low, high = np.where(below, middle, low), np.where(below, high, middle)
+    return EquivalentSheet(n, n, 0.5 * (low + high), wavelength_um, edges_um)
 
 
 def crossing_of(transmit: Floats, r1: Floats, r2: Floats) -> Floats:
