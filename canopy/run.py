@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,6 +15,9 @@ from canopy.light import HouseTransmission, Light, SunBands
 from canopy.optics import Covering, Ground, Leaf, Screen
 from canopy.studyfile import Plan, Study
 from weather.record import Weather
+
+if TYPE_CHECKING:
+    from canopy.greyband import GreyBand
 
 Floats = NDArray[np.float64]
 
@@ -55,6 +58,7 @@ class CandidateRun:
     sizing: Any  # canopy.sizing.Sizing
     design: Any  # canopy.designnight.DesignNight
     notes: tuple[str, ...] = ()  # assumptions that a reader must see
+    grey: GreyBand | None = None  # what one grey band would have said, for selective coverings
 
 
 @dataclass(frozen=True)

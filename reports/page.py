@@ -17,6 +17,7 @@ from canopy.run import Run
 from reports import (
     sections_choice,
     sections_end,
+    sections_grey,
     sections_house,
     sections_night,
     sections_radiation,
@@ -52,7 +53,7 @@ def json_for_script(value: Any) -> Markup:
 def sections_of(run: Run) -> tuple[Section, ...]:
     """Return every section of the report, in order."""
     rows, show = summaries(run), Display(run.study.keys.units)
-    return (
+    found = (
         sections_choice.which(run, rows, show),
         sections_choice.light(run, rows, show),
         sections_choice.heat(run, rows, show),
@@ -61,12 +62,14 @@ def sections_of(run: Run) -> tuple[Section, ...]:
         sections_radiation.bands(run, rows, show),
         sections_house.house_light(run, rows, show),
         sections_radiation.crop(run, rows, show),
+        sections_grey.grey(run, rows, show),
         sections_end.climate(run, rows, show),
         sections_end.inputs(run, rows, show),
         sections_end.weather(run),
         sections_end.cautions(),
         sections_end.closing(run),
     )
+    return tuple(section for section in found if section is not None)
 
 
 def environment() -> Environment:
