@@ -17,6 +17,7 @@ BASE_LOAD_H: Final = 4000.0  # full-load hours that a base-load unit should reac
 PART_LOAD_EDGES: Final = (0.0, 0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0)
 SIZES: Final = (0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0)
 S_PER_H: Final = 3600.0
+IDLE_W_M2: Final = 0.01  # less than this is no heating but the last digit of a solution
 
 
 @dataclass(frozen=True)
@@ -45,6 +46,12 @@ def exceeded(load: Floats, hours_per_year: float) -> float:
     return float(np.interp(rank, np.arange(len(falling)), falling))
 
 
+def _heating(load: Floats) -> Floats:
+    """Return the load with hours of no heating at exactly zero."""
+    q = np.asarray(load, float)
+    return np.where(q < IDLE_W_M2, 0.0, q)
+
+
 def covered(load: Floats, size_w_m2: float) -> float:
     """Return the share (0-1) of the heat that a boiler of a size covers hour by hour; 1 without any load."""
     total = float(np.sum(load))
@@ -57,7 +64,7 @@ def base_load(load: Floats, step_s: float, hours_per_year: float = BASE_LOAD_H) 
     A unit of size s delivers sum min(q, s); its full-load hours sum min(q, s) / s fall with s, and between
     two sorted loads they are linear in 1/s, so the size has a closed form. 0: no size reaches them.
     """
-    rising = np.sort(np.asarray(load, float))
+    rising = np.sort(_heating(load))
     n = len(rising)
     need = hours_per_year / YEAR_H * n  # steps at full load
     steps_s = np.arange(n, 0, -1)  # loads at or above rising[k]
@@ -80,7 +87,7 @@ def load_curve(load: Floats, design_w_m2: float, step_s: float = S_PER_H, points
     `load` (N,) W/m2 floor, `design_w_m2` > 0 (0 allowed: tables of an unheated house are zero).
     """
     step_h = step_s / S_PER_H
-    q = np.asarray(load, float)
+    q = _heating(load)
     falling = np.sort(q)[::-1]
     pick = np.unique(np.linspace(0, len(q) - 1, min(points, len(q))).round().astype(int))
     edges = np.asarray(PART_LOAD_EDGES)

@@ -16,7 +16,7 @@ from canopy.energy import Supply, energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import store_sizes
 from canopy.returns import ManyYears
-from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size
+from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, FiniteRun, Sizing, rerun, size
 from weather.record import Weather
 
 Floats = NDArray[np.float64]
@@ -84,7 +84,21 @@ def size_candidate(
     finite = None
     if found.design_w_m2 > 0.0:
         finite = rerun(case, result, weather.time, found.boiler_w_m2, solver)
-    return replace(found, finite=finite, energy=_energy(heating, result, shared, found, area)), night
+    said = found.explained + ((_finite_words(finite, found.boiler_kw),) if finite is not None else ())
+    used = _energy(heating, result, shared, found, area)
+    return replace(found, finite=finite, energy=used, explained=said), night
+
+
+def _finite_words(finite: FiniteRun, boiler_kw: float) -> str:
+    """Return in words what the proposed boiler does in this record."""
+    if finite.deficit_h == 0.0:
+        return f"With the proposed {boiler_kw:.0f} kW the house holds its set-point in every hour of this record."
+    when = str(finite.lowest_at.astype("datetime64[h]")).replace("T", " ")
+    return (
+        f"With the proposed {boiler_kw:.0f} kW the house stays more than .1 K below its set-point in "
+        f"{finite.deficit_h:.0f} hours of this record; the lowest air temperature is {finite.lowest_air_c:.1f} °C "
+        f"({when}:00)."
+    )
 
 
 def _pipes_short_h(case: HeatCase, result: HeatResult) -> float:

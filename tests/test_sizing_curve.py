@@ -56,12 +56,18 @@ def test_base_load_by_root_finding() -> None:
 @settings(max_examples=40, deadline=None)
 @given(st.lists(st.floats(0.0, 400.0), min_size=3, max_size=80), st.floats(1.0, 400.0))
 def test_curve_laws(load: list[float], size: float) -> None:
-    q = np.array(load)
+    q = np.round(np.array(load), 1)
     curve = load_curve(q, size)
     assert curve.part_load.sum() + curve.idle_h == len(q)
     assert np.all(np.diff(curve.heat_share) >= -1e-12)
     assert np.all(np.diff(curve.load) <= 0.0)
     assert 0.0 <= covered(q, size) <= 1.0 + 1e-12
+
+
+def test_last_digits_are_no_heating() -> None:
+    noisy = np.r_[np.full(8000, 1e-12), np.full(760, 50.0)]
+    assert base_load(noisy, 3600.0) == 0.0
+    assert load_curve(noisy, 50.0).idle_h == 8000
 
 
 def test_unheated_house_has_empty_tables() -> None:
