@@ -91,13 +91,13 @@ def size_candidate(
 
 def _finite_words(finite: FiniteRun, boiler_kw: float) -> str:
     """Return in words what the proposed boiler does in this record."""
+    with_it = f"With the proposed {boiler_kw:.0f} kW the house"
     if finite.deficit_h == 0.0:
-        return f"With the proposed {boiler_kw:.0f} kW the house holds its set-point in every hour of this record."
+        return f"{with_it} holds its set-point in every hour of this record."
     when = str(finite.lowest_at.astype("datetime64[h]")).replace("T", " ")
     return (
-        f"With the proposed {boiler_kw:.0f} kW the house stays more than .1 K below its set-point in "
-        f"{finite.deficit_h:.0f} hours of this record; the lowest air temperature is {finite.lowest_air_c:.1f} °C "
-        f"({when}:00)."
+        f"{with_it} stays more than .1 K below its set-point in {finite.deficit_h:.0f} hours of this record; "
+        f"the lowest air temperature is {finite.lowest_air_c:.1f} °C ({when}:00)."
     )
 
 
