@@ -181,9 +181,8 @@ def heat(run: Run, rows: Sequence[Summary], show: Display) -> Section:
                 f"{show.say(float(by_month[at]), 'kWh/m2')}, "
                 f"{percent(float(by_month[at]) / one.heat_kwh)} of the total."
             )
-        total = sum(
-            one.total[name] for _, names, _ in FLOWS if names for name in names if one.total[name] > 0
-        )
+        losses = [one.total[name] for _, names, way in FLOWS if way == "out" for name in names]
+        total = sum(loss for loss in losses if loss > 0)
         sky = one.total["sky_loss_kwh_m2"]
         air = one.total["air_change_loss_kwh_m2"] + one.total["venting_kwh_m2"]
         if total > 0:

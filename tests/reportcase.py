@@ -293,7 +293,7 @@ def make_night(watts: float) -> DesignNight:
     )
 
 
-def make_sizing(weather: Weather, heat: HeatResult, night: DesignNight) -> Sizing:
+def make_sizing(weather: Weather, heat: HeatResult, night: DesignNight | None) -> Sizing:
     """Return the sizing that the project itself works out from made-up hours."""
     q, floor = heat.heat_delivered, 4800.0
     found = size(q, weather.time, weather.temp_air, floor, night, 15.0, weather.typical)

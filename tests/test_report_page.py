@@ -8,11 +8,13 @@ from dataclasses import replace
 from html.parser import HTMLParser
 from itertools import pairwise
 
+import numpy as np
 import pytest
 
 from canopy import library
+from canopy.columns import LOSSES
 from reports.page import json_for_script, page_text
-from tests.reportcase import Fake, fakes, make_run
+from tests.reportcase import Fake, fakes, make_run, make_sizing
 
 EVIL = (
     "<img src=x onerror=hit()>",
@@ -218,3 +220,43 @@ def test_ranges_of_library_coverings_are_said() -> None:
     figure = library.row("glass-clear-4").figures["par_hemispherical"]
     assert f"{100 * figure.value:.1f}\u202f% ({100 * figure.low:.1f} to {100 * figure.high:.1f})" in words
     assert "points around the figure used" not in "".join(read(page_text(run)).words)
+
+
+def test_the_share_of_the_sky_is_of_all_that_leaves(page: str) -> None:
+    daily = make_run().candidates[0].daily
+    losses = [daily[name.replace("_w_m2", "_kwh_m2")].sum() for name in LOSSES]
+    share = daily["sky_loss_kwh_m2"].sum() / sum(losses)
+    assert f"{100 * share:.0f}\u202f% goes to the sky as long-wave radiation" in "".join(read(page).words)
+
+
+def test_a_polar_day_has_a_page_too() -> None:
+    run = make_run(fakes(1))
+    one = run.candidates[0]
+    bright = replace(one.case, outside=replace(one.case.outside, sun_up=np.ones(8760, bool)))
+    words = "".join(read(page_text(replace(run, candidates=(replace(one, case=bright),)))).words)
+    assert "no hour with the sun below the horizon" in words
+
+
+def test_an_unheated_tunnel_has_a_page_too() -> None:
+    run = make_run(fakes(2))
+    cold = []
+    for one in run.candidates:
+        none = {name: 0.0 * one.hourly[name] for name in ("heat_delivered_w_m2", "heat_for_humidity_w_m2")}
+        days = {name: 0.0 * one.daily[name] for name in ("heat_delivered_kwh_m2", "heat_for_humidity_kwh_m2")}
+        months = {name: 0.0 * one.monthly[name] for name in days}
+        heat = replace(one.heat, heat_delivered=np.zeros(8760))
+        cold.append(
+            replace(
+                one,
+                hourly={**one.hourly, **none},
+                daily={**one.daily, **days},
+                monthly={**one.monthly, **months},
+                heat=heat,
+                design=None,
+                sizing=make_sizing(run.weather, heat, None),
+            )
+        )
+    words = "".join(read(page_text(replace(run, candidates=tuple(cold)))).words)
+    assert "No candidate needs heat" in words
+    assert "no heat is asked for" in words
+    assert "nan" not in re.sub(r"[a-z]*nan[a-z]+", "", words.lower())
