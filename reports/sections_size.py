@@ -104,6 +104,8 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
             f"The boiler ranges from {show.say(small.sizing.boiler_kw, 'kW')} ({small.plan.name}) to "
             f"{show.say(large.sizing.boiler_kw, 'kW')} ({large.plan.name}), margin included."
         )
+    if len(run.hours) < len(run.weather):
+        lines.append("Sizes are taken from the whole weather record, not only from the season reported.")
     if run.weather.typical:
         lines.append(
             "The weather is a typical year: its extremes are removed, so its largest hour alone is no size."
@@ -119,9 +121,10 @@ def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
             _night_table(night, load, one.plan.name, show) for load in (night.drawn, night.open) if load
         ]
         blocks.append(_outside_table(night, show))
-        blocks.append(
-            Points(tuple(map(pretty, (night.hand.text, f"Recovery after the night: {night.recovery.text}."))))
-        )
+        if show.system == "us":
+            blocks.append(Text(("In SI units, as worked:",)))
+        lines = night.hand.text, f"Recovery after the night: {night.recovery.text}."
+        blocks.append(Points(tuple(map(pretty, lines))))
     if show.system == "si":
         blocks.append(Points(tuple(map(pretty, one.sizing.explained))))
     if one.sizing.finite is not None:

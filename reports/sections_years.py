@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from canopy.fuel import FuelUse
 from canopy.run import Run
 from reports import sentences as say
 from reports.blocks import Block, Points, Row, Table, Text
@@ -68,7 +69,7 @@ def energy_table(run: Run, show: Display) -> Table | None:
         e = one.sizing.energy
         if e is None:
             continue
-        cost, pump, bought = e.total_cost, e.pump, shown(e.boiler.fuel.unit, show.system)
+        cost, pump = e.total_cost, e.pump
         priced = priced or cost is not None
         currency = next((c.currency for c in (e.boiler_cost, e.electricity_cost) if c is not None), "")
         rows.append(
@@ -76,7 +77,7 @@ def energy_table(run: Run, show: Display) -> Table | None:
                 one.plan.name,
                 (
                     e.boiler.fuel.title,
-                    f"{number(float(bought.convert(e.boiler.amount)))} {_unit(bought.text)}",
+                    _bought(e.boiler, show),
                     number(float(gross.convert(e.boiler.gross_kwh))),
                     NONE if e.electricity is None else number(e.electricity.gross_kwh),
                     NONE
@@ -109,5 +110,10 @@ def energy_table(run: Run, show: Display) -> Table | None:
     )
 
 
-def _unit(unit: str) -> str:
-    return {"m3": "m³", "l": "litres", "gal": "gallons", "short ton": "short tons"}.get(unit, unit)
+def _bought(use: FuelUse, show: Display) -> str:
+    if show.system == "us" and use.fuel.unit == "m3":
+        cubic_feet = use.amount * show.unit("m").factor ** 3
+        return f"{number(cubic_feet / 1000.0)} thousand ft³"
+    unit = shown(use.fuel.unit, show.system)
+    name = {"m3": "m³", "l": "litres", "gal": "gallons", "short ton": "short tons"}.get(unit.text, unit.text)
+    return f"{number(float(unit.convert(use.amount)))} {name}"
