@@ -1,5 +1,6 @@
 """A user's own record: columns, units, clocks, steps; gaps and faults in it."""
 
+from datetime import datetime
 from pathlib import Path
 
 import numpy as np
@@ -9,13 +10,14 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from weather import gaps, grid, units
-from weather.clock import civil_to_standard, read_stamps
+from weather.clock import civil_to_standard
 from weather.errors import UserError
 from weather.files import read_file
 from weather.load import load_weather
 from weather.raw import RawWeather
 from weather.record import Weather
 from weather.request import WeatherRequest
+from weather.stamps import read_stamps
 
 SITE = {"latitude": 52.0, "longitude": 4.5, "elevation": 0.0, "timezone": "Europe/Amsterdam"}
 
@@ -282,3 +284,19 @@ def test_a_year_and_place_by_columns(tmp_path: Path) -> None:
     raw = read_file(tmp_path / "parts.csv")
     assert raw.stamp[0] == np.datetime64("2021-05-03T00:00:00")
     np.testing.assert_allclose(raw.columns["ghi"], data["ghi"], rtol=1e-12)
+
+
+@settings(deadline=None, max_examples=100)
+@given(
+    st.lists(st.datetimes(pd.Timestamp("1900-01-01"), pd.Timestamp("2100-01-01")), min_size=1, max_size=20),
+    st.sampled_from(["%Y-%m-%d %H:%M", "%Y-%m-%dT%H:%M:%S", "%Y-%m-%d %H:%M:%S+01:00", "%Y-%m-%dT%H:%MZ"]),
+    st.booleans(),
+)
+def test_quick_and_patient_reading_of_times_agree(times: list[datetime], form: str, odd: bool) -> None:
+    rows = [time.strftime(form) for time in times]
+    extra = ["rubbish"] if odd else []  # one odd row sends all through the patient way
+    stamps = read_stamps(rows + extra, "x")
+    expected = pd.to_datetime(pd.Series(rows), format="ISO8601", utc=True).dt.tz_localize(None)
+    assert (stamps.time[: len(rows)] == expected.to_numpy().astype("datetime64[s]")).all()
+    assert stamps.good.tolist() == [True] * len(rows) + [False] * len(extra)
+    assert stamps.utc == (form[-1] in "Z0")

@@ -9,7 +9,7 @@ import numpy as np
 from weather import psychro
 from weather.air import Air, complete_air
 from weather.errors import UserError
-from weather.grid import Hours, to_hours
+from weather.grid import LEAST_HOURS, Hours, to_hours
 from weather.labels import noon_offset_h, settle
 from weather.quality import closure, limits, missing_codes, plausibility
 from weather.radiation import SkySun, Solar, complete
@@ -107,6 +107,8 @@ def assemble(request: WeatherRequest, raw: RawWeather, place: Place) -> Weather:
     place = replace(place, utc_offset_h=place.utc_offset_h + place.clock_h)
     findings = [*raw.findings, *missing_codes(raw), *place.findings, *timing.findings, *_clock(place)]
     hours = to_hours(raw, start)
+    if len(hours.time) < LEAST_HOURS:
+        raise UserError(f"{raw.source}: {len(hours.time)} hours, at least {LEAST_HOURS} are needed")
     sky = sky_sun(hours.time, place, sun_offset)
     columns, found = limits(hours.columns, sky)
     findings += [*hours.findings, *found, *closure(columns, sky)]

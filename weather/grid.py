@@ -36,10 +36,7 @@ def to_hours(raw: RawWeather, start: Times) -> Hours:
     """
     if len(start) == 0:
         raise UserError(f"{raw.source}: no rows")
-    hours = _typical_hours(raw, start) if raw.typical else _real_hours(raw, start)
-    if len(hours.time) < LEAST_HOURS:
-        raise UserError(f"{raw.source}: {len(hours.time)} hours, at least {LEAST_HOURS} are needed")
-    return hours
+    return _typical_hours(raw, start) if raw.typical else _real_hours(raw, start)
 
 
 def _typical_hours(raw: RawWeather, start: Times) -> Hours:

@@ -9,10 +9,11 @@ from typing import TYPE_CHECKING, Any, Final
 import numpy as np
 
 from weather import psychro
-from weather.clock import Stamps, civil_to_standard, read_stamps
+from weather.clock import civil_to_standard
 from weather.errors import UserError, nearest
 from weather.raw import RawWeather
 from weather.record import Finding, Floats
+from weather.stamps import Stamps, read_stamps
 from weather.textfile import MAX_ROWS, joined_years, lost_rows, regular_step, table
 from weather.units import MAPPABLE, NAMES, allowed_units, plain_name, to_si
 
