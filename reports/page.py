@@ -22,6 +22,7 @@ from reports import (
     sections_night,
     sections_radiation,
     sections_size,
+    sections_warmth,
 )
 from reports.blocks import Section
 from reports.display import Display
@@ -56,7 +57,7 @@ def sections_of(run: Run) -> tuple[Section, ...]:
     found = (
         sections_choice.which(run, rows, show),
         sections_choice.light(run, rows, show),
-        sections_choice.heat(run, rows, show),
+        sections_warmth.heat(run, rows, show),
         sections_night.nights(run, rows, show),
         sections_size.size(run, rows, show),
         sections_radiation.bands(run, rows, show),

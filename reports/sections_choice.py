@@ -14,7 +14,6 @@ from reports.blocks import Figure, Points, Row, Section, Table, Text
 from reports.csvtables import mean_dli
 from reports.display import Display, number, percent
 from reports.figures import marks_of, month_labels
-from reports.figures_heat import FLOWS, balance_figure, month_heat_figure
 from reports.figures_light import month_light_figures, trade_figure
 from reports.summary import Summary, house_differences
 
@@ -165,75 +164,4 @@ def light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         "Light by month",
         "How much light reaches the crop?",
         (Text(tuple(lead), lead=True), *figures, table),
-    )
-
-
-def heat(run: Run, rows: Sequence[Summary], show: Display) -> Section:
-    """Return heat by month and where it goes."""
-    months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
-    lead = []
-    for one, cand in list(zip(rows, run.candidates, strict=True))[:1]:
-        by_month = cand.monthly["heat_delivered_kwh_m2"]
-        if by_month.sum() > 0:
-            at = int(np.argmax(by_month))
-            lead.append(
-                f"With {one.name}, {months[at]} takes the most heat: "
-                f"{show.say(float(by_month[at]), 'kWh/m2')}, "
-                f"{percent(float(by_month[at]) / one.heat_kwh)} of the total."
-            )
-        losses = [one.total[name] for _, names, way in FLOWS if way == "out" for name in names]
-        total = sum(loss for loss in losses if loss > 0)
-        sky = one.total["sky_loss_kwh_m2"]
-        air = one.total["air_change_loss_kwh_m2"] + one.total["venting_kwh_m2"]
-        if total > 0:
-            lead.append(
-                f"Of all that leaves this house, {percent(sky / total)} goes to the sky as long-wave "
-                "radiation and "
-                f"{percent(air / total)} with the air that leaks out or is vented."
-            )
-    damp = max(rows, key=lambda r: r.total["heat_for_humidity_kwh_m2"])
-    damp_kwh = damp.total["heat_for_humidity_kwh_m2"]
-    if damp_kwh > 0.5:
-        most = "" if len(rows) == 1 else f" with {damp.name}, the most of all candidates"
-        lead.append(f"Keeping the air dry by venting costs {show.say(damp_kwh, 'kWh/m2')} of it{most}.")
-    table = Table(
-        f"Heat delivered by month, {show.text('kWh/m2')}",
-        ("candidate", *month_labels(run.months), "sum"),
-        tuple(
-            Row(
-                r.name,
-                (
-                    *(show.bare(v, "kWh/m2", 1) for v in cand.monthly["heat_delivered_kwh_m2"]),
-                    show.bare(r.heat_kwh, "kWh/m2", 1),
-                ),
-                mark,
-            )
-            for r, cand, mark in zip(rows, run.candidates, marks_of(run), strict=True)
-        ),
-        folded=True,
-    )
-    flows = Table(
-        f"What comes in and what goes out, {show.text('kWh/m2')}",
-        ("candidate", *(mark.name for mark, _, _ in FLOWS)),
-        tuple(
-            Row(
-                r.name,
-                tuple(show.bare(sum(r.total[n] for n in names), "kWh/m2", 1) for _, names, _ in FLOWS),
-                mark,
-            )
-            for r, mark in zip(rows, marks_of(run), strict=True)
-        ),
-        folded=True,
-    )
-    return Section(
-        "heat",
-        "Heat by month",
-        "How much heat does it take, and where does it go?",
-        (
-            Text(tuple(lead), lead=True),
-            month_heat_figure(run, show),
-            table,
-            balance_figure(run, rows, show),
-            flows,
-        ),
     )

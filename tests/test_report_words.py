@@ -11,6 +11,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from canopy.columns import LOSSES, STORES
 from canopy.run import Run
 from reports import sentences as say
 from reports.display import Display, number, percent
@@ -33,6 +34,7 @@ from reports.figures_climate import AIR_OUT, HUMID, INSIDE, MEAN
 from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
 from reports.nights import find_nights, night_pattern
+from reports.savings import LOSS_PATHS, saving
 from reports.summary import beaten, house_differences, summaries
 from reports.terminal import StageLine, plain, progress, result_table, show
 from tests.reportcase import Fake, fakes, make_run
@@ -234,3 +236,18 @@ def test_progress_changes_in_place_on_a_terminal() -> None:
     assert "\n" not in screen.getvalue()
     assert screen.getvalue().startswith("\r")
     assert screen.getvalue().endswith("\x1b[2K")
+
+
+def test_a_saving_is_accounted_for_path_by_path(run: Run) -> None:
+    base = run.candidates[0]
+    for one in run.candidates:
+        found = saving(run, base, one)
+        assert abs(found.open) < 1e-6
+        expected = base.daily["heat_delivered_kwh_m2"].sum() - one.daily["heat_delivered_kwh_m2"].sum()
+        assert found.heat == pytest.approx(expected, abs=1e-9)
+    assert saving(run, base, base).paths == (0.0,) * len(LOSS_PATHS)
+
+
+def test_saving_paths_take_every_loss_and_store_once() -> None:
+    names = [name for _, columns in LOSS_PATHS for name in columns]
+    assert sorted(names) == sorted(LOSSES + STORES)
