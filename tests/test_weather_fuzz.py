@@ -20,7 +20,7 @@ PVLIB_DATA = Path(pvlib.__file__).parent / "data"
 ROWS = 24 * 12
 LIMIT = settings(
     deadline=None,
-    max_examples=60,
+    max_examples=40,
     suppress_health_check=[HealthCheck.function_scoped_fixture, HealthCheck.too_slow],
 )
 Damage = list[tuple[str, float, int]]

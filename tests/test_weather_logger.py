@@ -13,7 +13,7 @@ from weather import gaps, grid, units
 from weather.clock import civil_to_standard
 from weather.errors import UserError
 from weather.files import read_file
-from weather.load import load_weather
+from weather.load import load_weather, split_years
 from weather.raw import RawWeather
 from weather.record import Weather
 from weather.request import WeatherRequest
@@ -255,6 +255,19 @@ def test_day_and_month_that_cannot_be_told_apart_are_refused() -> None:
 def test_leap_day_is_kept_in_a_real_record(tmp_path: Path) -> None:
     weather = load(write(frame(days=60, start="2020-02-01"), tmp_path / "leap.csv"))
     assert (weather.time.astype("datetime64[D]") == np.datetime64("2020-02-29")).sum() == 24
+
+
+def test_years_in_a_row_are_one_record_or_one_each(tmp_path: Path) -> None:
+    data = frame(days=731, start="2020-01-01")
+    data["ghi"] *= 0.05
+    path = write(data, tmp_path / "years.csv")
+    weather = load(path, timezone="Etc/GMT", longitude=0.0)
+    assert len(weather) == 731 * 24
+    assert not weather.typical
+    years = split_years(weather)
+    assert [len(year) for year in years] == [8784, 8760]
+    np.testing.assert_array_equal(np.concatenate([year.ghi for year in years]), weather.ghi)
+    assert years[1].title.endswith("2021")
 
 
 @settings(deadline=None)

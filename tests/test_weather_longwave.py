@@ -86,6 +86,8 @@ def test_model_on_alamosa(samples: Path, tmp_path: Path) -> None:
     )
     error = weather.longwave_down - measured_hours
     assert np.sqrt(np.nanmean(error**2)) <= 16.0
+    # the night is clear but for two hours of passing cloud, which no sun tells of: hence the median
+    assert abs(np.median(error[weather.zenith > 90.0])) < 5.0
 
 
 @pytest.mark.registry

@@ -12,6 +12,7 @@ from playwright.sync_api import sync_playwright
 
 from reports.weather_climate import climate, month_rows, sky_depression
 from reports.weather_page import quality_text, weather_command, weather_page
+from tests.conftest import Cli
 from weather.errors import UserError
 from weather.load import load_weather
 from weather.record import Weather
@@ -59,6 +60,17 @@ def test_command_reads_a_shipped_name_and_a_path(tmp_path: Path) -> None:
     with pytest.raises(UserError, match="does not exist"):
         weather_command(tmp_path / "none.epw", tmp_path / "x.html")
     assert list(tmp_path.iterdir()) == []
+
+
+def test_command_line(cli: Cli, tmp_path: Path) -> None:
+    done = cli("weather", "greensboro", "--plot", tmp_path / "page.html")
+    assert done.returncode == 0, done.stderr
+    assert "Climate by month" in done.stdout
+    assert (tmp_path / "page.html").stat().st_size < 4_000_000
+    bad = cli("weather", tmp_path / "none.epw")
+    assert bad.returncode == 2
+    assert "does not exist" in bad.stderr
+    assert "Traceback" not in bad.stderr
 
 
 def test_page_that_cannot_be_written_leaves_nothing(tmp_path: Path, greensboro: Weather) -> None:

@@ -11,7 +11,7 @@ from weather.air import Air, complete_air
 from weather.errors import UserError
 from weather.grid import LEAST_HOURS, Hours, to_hours
 from weather.labels import noon_offset_h, settle
-from weather.quality import closure, limits, missing_codes, plausibility
+from weather.quality import closure, limits, longwave_findings, missing_codes, plausibility
 from weather.radiation import SkySun, Solar, complete
 from weather.raw import RawWeather
 from weather.record import Finding, Site, Times, Weather
@@ -183,12 +183,7 @@ def finish(
     utc = hours.time + np.timedelta64(round(1800.0 - 3600.0 * place.utc_offset_h), "s")
     model = sky_longwave(air.vapour, air.temp, cloud, solar_time(utc, place.longitude))
     modelled = ~np.isfinite(longwave) if request.longwave != "model" else np.ones(n, dtype=bool)
-    if modelled.any():
-        text = (
-            f"long-wave from the sky computed in {int(modelled.sum())} hours (Prata 1996, clouds by "
-            "clearness, night inversion; RMSE 10-13 W/m2 on measured records)"
-        )
-        findings += (Finding("longwave", "note", text, int(modelled.sum())),)
+    findings += longwave_findings(longwave, model, modelled)
     if polar.any() and known is None and modelled.any():
         text = f"{int(polar.sum())} hours of polar night have no sun to tell clouds by: mean cloudiness taken"
         findings += (Finding("polar-night", "warning", text, int(polar.sum())),)

@@ -25,7 +25,9 @@ def load_weather(request: WeatherRequest) -> Weather:
     """Return the weather of a study, hour by hour, checked and without gaps. UserError for bad input.
 
     Typical years and the clear-sky year stand on the nominal year 1990; real records keep their own dates,
-    with 29 February as a day like others, and may run over several years.
+    with 29 February as a day like others, and may run over several years. Hours begin at full hours of the
+    standard time of the site's zone (to the nearest whole hour). Air values stay in the hour beside whose
+    radiation the file writes them.
     """
     sources = (request.file is not None, bool(request.files), request.shipped is not None, request.clear_sky)
     if sum(sources) != 1:

@@ -47,7 +47,8 @@ class Weather:
     """Hour-by-hour weather: equal-length arrays, SI, no gaps left, every filled hour marked.
 
     `time` is the START of each hour on the file's own fixed offset (`utc_offset_h`), whatever label the
-    file used. Sun position belongs to the middle of the hour. The law
+    file used. Sun position belongs to the middle of the hour, or to the instant within the hour that a file's
+    values stand for (satellite years). The law
     `ghi == dhi + dni * max(cos(zenith), 0)` holds to rounding in every hour (zenith: apparent).
     """
 
