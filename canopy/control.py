@@ -51,7 +51,7 @@ class ScreenRule:
 
     energy: global below `close_below_w_m2` and outside below `close_below_outside_c`.
     shade: global above `close_above_w_m2`. blackout: inside `hours`, whatever the weather.
-    `hours` (civil, from, until; may wrap midnight) and `months` (1-12) limit every purpose.
+    `hours` (civil, from, until; may wrap midnight) and `months` (1-12) or `days` limit every purpose.
     """
 
     purpose: Literal["energy", "shade", "blackout"] = "energy"
@@ -62,6 +62,7 @@ class ScreenRule:
     months: tuple[int, ...] | None = None
     share: float = 1.0  # how far it is drawn
     gap: float = HUMIDITY_GAP  # widest gap it opens for humidity or heat
+    days: tuple[int, int] | None = None  # first and last day of the year, 1-365; may wrap over the new year
 
 
 def within(hour: Floats, start: float, end: float) -> Bools:
@@ -109,6 +110,10 @@ def drawn(
         on = on & within(civil_hour, *rule.hours)
     if rule.months is not None:
         on = on & np.isin(month_of(day_of_year), rule.months)
+    if rule.days is not None:
+        first, last = rule.days
+        day = np.floor(day_of_year)
+        on = on & ((day >= first) & (day <= last) if first <= last else (day >= first) | (day <= last))
     return np.where(on, rule.share, 0.0)
 
 

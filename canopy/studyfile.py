@@ -12,6 +12,8 @@ from typing import Any
 from pydantic import ValidationError
 
 from canopy import library
+from canopy.library_rows import table as library_table
+from canopy.screenrules import check_rule
 from canopy.study import ClimateKeys, CropKeys, HeatingKeys, HouseKeys
 from canopy.studykeys import CandidateKeys, StudyKeys
 from canopy.studymessage import say
@@ -93,11 +95,11 @@ def _merged(keys: StudyKeys, raw: Mapping[str, Any], entry: CandidateKeys, at: i
 
 def _check_names(study: StudyKeys, plans: tuple[Plan, ...], label: str) -> None:
     lists = {"candidate": study.candidate, "screen": study.screen, "covering": study.covering}
-    for table, rows in lists.items():
+    for group, rows in lists.items():
         seen: set[str] = set()
         for name in (row.name for row in rows):  # type: ignore[attr-defined]
             if name.casefold() in seen:
-                raise UserError(f'{label}: {table}: two are called "{name}"; every name stands once')
+                raise UserError(f'{label}: {group}: two are called "{name}"; every name stands once')
             seen.add(name.casefold())
     own_coverings = tuple(c.name for c in study.covering)
     own_screens = tuple(s.name for s in study.screen)
@@ -109,6 +111,7 @@ def _check_names(study: StudyKeys, plans: tuple[Plan, ...], label: str) -> None:
             _known(label, crumb, cover.based_on, library.covering_names())
     for screen in study.screen:
         _known(label, f'screen "{screen.name}" -> based_on', screen.based_on, library.screen_names())
+        check_rule(screen, str(library_table("screen", screen.based_on)["kind"]), label)
     coverings = own_coverings + library.covering_names()
     for plan in plans:
         _check_plan(plan, coverings, own_screens + library.screen_names(), label)

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from typing import Annotated, Any, Literal
 
-from pydantic import Field, model_validator
+from pydantic import Field, field_validator, model_validator
 
+from canopy.seasonal import day_number
 from canopy.study import (
     ClimateKeys,
     CropKeys,
@@ -34,7 +35,7 @@ class ScreenKeys(Section):
     until_hour: Hour | None = None
     first_day: Day = None
     last_day: Day = None
-    humidity_gap_pct: Annotated[float, Field(ge=0, le=50)] = 0.0
+    humidity_gap_pct: Annotated[float, Field(ge=0, le=50)] | None = None
 
     @model_validator(mode="after")
     def _pairs(self) -> ScreenKeys:
@@ -59,13 +60,37 @@ class CoveringKeys(Section):
     thickness_mm: Annotated[float, Field(gt=0.005, le=100)] | None = None
     age_years: Annotated[float, Field(ge=0, le=40)] = 0.0
     wet: Literal["film", "drops", "none"] | None = None
-    dirt_pct_by_month: list[Share] = []
+    dirt_by_month: list[Annotated[float, Field(ge=0, le=0.6)]] = []
     wash_days: list[str] = []
+
+    @field_validator("dirt_by_month")
+    @classmethod
+    def _months(cls, shares: list[float]) -> list[float]:
+        if len(shares) not in (0, 12):
+            raise ValueError(f"found {len(shares)} shares; write twelve, January to December")
+        return shares
+
+    @field_validator("wash_days")
+    @classmethod
+    def _days(cls, days: list[str]) -> list[str]:
+        for day in days:
+            day_number(day)
+        return days
 
     @model_validator(mode="after")
     def _one_kind(self) -> CoveringKeys:
         if (self.spectrum is None) == (self.based_on is None):
             raise ValueError("write based_on (a library covering) or spectrum (a CSV), one of the two")
+        if self.wash_days and not self.dirt_by_month:
+            raise ValueError("wash_days needs dirt_by_month")
+        quoted = ("par_normal", "par_hemispherical", "haze", "thermal_transmittance", "u_value")
+        given = [key for key in quoted if getattr(self, key) is not None]
+        if self.spectrum is not None and given:
+            raise ValueError(f"{given[0]} goes with based_on, not with a spectrum")
+        if self.spectrum is not None and self.age_years:
+            raise ValueError("age_years goes with based_on; a spectrum is of the covering as it is")
+        if self.based_on is not None and self.thickness_mm is not None:
+            raise ValueError("thickness_mm goes with a spectrum, not with based_on")
         return self
 
 

@@ -72,7 +72,8 @@ def _plan_line(plan: Plan) -> str:
     screens = f" with {', '.join(plan.screens)}" if plan.screens else ""
     return (
         f"  {plan.name}: {plan.covering}{screens}; {house.spans} {house.form} spans of "
-        f"{house.span_width:g} m x {house.length:g} m, gutter {house.gutter_height:g} m, {roof}, ridge {house.ridge_azimuth:g}°"
+        f"{house.span_width:g} m x {house.length:g} m, gutter {house.gutter_height:g} m, {roof}, "
+        f"ridge {house.ridge_azimuth:g}°"
     )
 
 
