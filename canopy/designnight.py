@@ -20,7 +20,7 @@ from canopy.recovery import Recovery, recovery
 from weather.constants import CP_AIR, GAS_CONSTANT, MOLAR_MASS_AIR, STEFAN_BOLTZMANN, ZERO_C_K
 
 Floats = NDArray[np.float64]
-Solver = Callable[[HeatCase], HeatResult]
+Solver = Callable[..., HeatResult]  # `balance.solve`: case, and a like result to start from
 
 NIGHT_H: Final = 24  # equal hours that follow on each other: a steady state, whatever the start
 NO_VENTING_K: Final = 15.0  # vents for temperature stay shut
@@ -277,7 +277,8 @@ def design_night(
             continue
         night, result, note = _hold(night_case(case, outside, row, inside, drawn), solver, inside)
         loads.append(_night_load(night, result, label))
-        notes += [f"screens {label}: {note}"] if note else []
+        state_words = "" if label == "none" else f"screens {label}: "
+        notes += [state_words + note] if note else []
     opened, shut = loads[0], (loads[1] if len(loads) > 1 else None)
     hold = None
     if shut is not None and opened.total_w_m2 > 0.0:

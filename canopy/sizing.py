@@ -183,8 +183,8 @@ def _explain(
         said.append(
             f"Design night {night.design_w_m2:.0f} W/m2 at {night.outside.temp_c:.1f} °C outside, "
             f"{night.inside_c:.1f} °C inside, {night.outside.wind_m_s:.1f} m/s, clear and dark, covering "
-            f"dry, screens {night.design.screens}; on paper (U x area) {night.hand.total_w_m2:.0f} W/m2 "
-            "with screens open."
+            f"dry, {_screens(night)}; on paper (U x area) {night.hand.total_w_m2:.0f} W/m2 "
+            "without a screen."
         )
         if night.drawn is not None:
             said.append(
@@ -200,6 +200,10 @@ def _explain(
         )
     said.append(f"The design heat is taken from: {basis}.")
     return tuple(said)
+
+
+def _screens(night: DesignNight) -> str:
+    return "no screen" if night.design.screens == "none" else f"screens {night.design.screens}"
 
 
 def _short_pipes(hours: float, night: DesignNight | None) -> tuple[str, ...]:
@@ -233,7 +237,7 @@ def rerun(
     result: HeatResult,
     time: Times,
     capacity_w_m2: float,
-    solver: Callable[[HeatCase], HeatResult] | None = None,
+    solver: Callable[..., HeatResult] | None = None,
 ) -> FiniteRun:
     """Run the proposed heating with its finite capacity: hours short and lowest temperature.
 
@@ -245,7 +249,8 @@ def rerun(
             from canopy.balance import solve
 
             solver = solve
-        result = solver(replace(case, heating=replace(case.heating, capacity_w_m2=capacity_w_m2)))
+        limited = replace(case, heating=replace(case.heating, capacity_w_m2=capacity_w_m2))
+        result = solver(limited, result)  # warm: all but the coldest hours stay as they are
     hours = case.outside.step_s / S_PER_H
     asked = np.isfinite(case.climate.heat_at)
     missing = np.where(asked, case.climate.heat_at, -np.inf) - result.temp_air
