@@ -69,7 +69,7 @@ def _entry(theta: Floats) -> Floats:
 
 
 def _mix(row: Row, theta: Floats, side: str) -> tuple[Floats, Floats, Floats, Floats]:
-    """Return (beam_beam, beam_diffuse, reflect, specular), each (B, A), of the fabric for light from `side`."""
+    """Return (beam_beam, beam_diffuse, reflect, specular), each (B, A), for light from `side`."""
     openness = row.figures["openness"].value
     hole = openness * hole_view(theta, float(row.table["hole_depth"]))
     straight, scattered, back, mirror = 0.0, 0.0, 0.0, 0.0

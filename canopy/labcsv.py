@@ -63,7 +63,7 @@ def read_lab_csv(path: Path) -> LabSpectrum:
     lines = _lines(path)
     _, header = lines[0]
     separator = max(";\t,", key=header.count)
-    columns = _columns(path, header.split(separator))
+    columns, percent = _columns(path, header.split(separator))
     rows = [_numbers(path, number, text, separator, len(columns)) for number, text in lines[1:]]
     if len(rows) < 8:
         raise UserError(f"{path.name}: {len(rows)} rows of numbers; a spectrum needs at least 8")
@@ -75,7 +75,7 @@ def read_lab_csv(path: Path) -> LabSpectrum:
         at = wavelength[int(np.argmin(np.diff(wavelength)))]
         raise UserError(f"{path.name}: wavelength {at:g} µm stands twice; write each wavelength once")
     values: dict[str, Floats] = {
-        key: _fraction(path, key, data[key][order], wavelength, notes)
+        key: _fraction(path, key, data[key][order], wavelength, percent, notes)
         for key in ("transmit", "front", "back", "scattered")
         if key in data
     }
@@ -113,20 +113,23 @@ def _lines(path: Path) -> list[tuple[int, str]]:
     return lines
 
 
-def _columns(path: Path, cells: list[str]) -> list[str]:
-    found = []
+def _columns(path: Path, cells: list[str]) -> tuple[list[str], set[str]]:
+    """Return what each column holds, and which of them say that they are percent."""
+    found, percent = [], set()
     for cell in cells:
         text = cell.strip().strip('"').lower()
         plain = re.sub(r"[\s_\-()\[\]%]|pct|percent", "", text)
         if plain not in _COLUMNS:
             raise UserError(f'{path.name}, header: column "{cell.strip()[:40]}" is not known; {_HELP}')
         found.append(_COLUMNS[plain])
+        if re.search(r"%|pct|percent", text):
+            percent.add(_COLUMNS[plain])
     repeated = {c for c in found if found.count(c) > 1}
     if repeated:
         raise UserError(f"{path.name}, header: two columns mean {sorted(repeated)[0]}; {_HELP}")
     if not any(c.startswith("wavelength") for c in found) or "transmit" not in found:
         raise UserError(f"{path.name}, header: wavelength and transmittance are needed; {_HELP}")
-    return found
+    return found, percent
 
 
 def _numbers(path: Path, number: int, text: str, separator: str, count: int) -> list[float]:
@@ -167,11 +170,13 @@ def _wavelength(path: Path, data: dict[str, Floats]) -> tuple[Floats, list[str]]
     return wave, notes
 
 
-def _fraction(path: Path, key: str, values: Floats, wavelength: Floats, notes: list[str]) -> Floats:
+def _fraction(
+    path: Path, key: str, values: Floats, wavelength: Floats, percent: set[str], notes: list[str]
+) -> Floats:
     title = {"transmit": "transmittance", "front": "reflectance_front", "back": "reflectance_back"}.get(
         key, "transmittance_diffuse"
     )
-    if values.max() > 1.0 + SLACK:
+    if key in percent or values.max() > 1.0 + SLACK:
         values = values / 100.0
         notes.append(f"{title} read as percent")
     bad = (values < -SLACK) | (values > 1.0 + SLACK)

@@ -26,7 +26,7 @@ from canopy.layers import (
     build_thermal,
 )
 from canopy.optics import Covering, Gap, SolarOptics, ThermalOptics
-from canopy.reshape import scale_light, set_haze
+from canopy.reshape import haze_of, scale_light, set_haze
 from canopy.sheets import EquivalentSheet, MaterialSheet, SpectralLayer, crossing_of, from_normal
 
 Floats = NDArray[np.float64]
@@ -144,14 +144,8 @@ def optics_of(
     state: Wetness = wetness
     solar = build_solar(sheets, webs=stack.webs or None, wetness=state, drops=stack.drops)
     if stack.haze is not None and wetness == "dry":
-        solar = set_haze(solar, max(stack.haze, _haze(solar)))
+        solar = set_haze(solar, max(stack.haze, haze_of(solar)))
     return solar, build_thermal(sheets, wetness=state, drops=stack.drops)
-
-
-def _haze(solar: SolarOptics) -> float:
-    par = SOLAR.index("par")
-    through = solar.beam_beam[par, 0] + solar.beam_diffuse[par, 0]
-    return float(solar.beam_diffuse[par, 0] / through)
 
 
 @cache
@@ -184,7 +178,7 @@ def assemble(
         kind=entry["kind"],
         provenance=entry["provenance"],
         source=entry["source"],
-        haze=_haze(dry[0]),
+        haze=haze_of(dry[0]),
         solar_dry=dry[0],
         solar_wet=wet[0],
         thermal_dry=dry[1],

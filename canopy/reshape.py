@@ -96,6 +96,12 @@ def _from_inside(optics: SolarOptics, down: Floats) -> dict[str, Floats]:
     return {"absorbed_from_inside": absorbed, "reflect_inside": back}
 
 
+def haze_of(optics: SolarOptics) -> float:
+    """Return the scattered share of what PAR sends through at normal incidence."""
+    straight, scattered = float(optics.beam_beam[PAR, 0]), float(optics.beam_diffuse[PAR, 0])
+    return scattered / max(straight + scattered, _TINY)
+
+
 def set_haze(optics: SolarOptics, haze: float) -> SolarOptics:
     """Return optics that scatter `haze` of what PAR sends through at normal; other angles and bands follow.
 

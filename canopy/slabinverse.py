@@ -16,7 +16,8 @@ from canopy.sheets import crossing_of, face_powers
 
 Floats = NDArray[np.float64]
 
-OPAQUE = 1e-4  # internal transmittance below which k is only known to be large
+OPAQUE = 1e-4  # internal transmittance that bounds k from below
+SEEN = 3e-3  # internal transmittance below which a laboratory's noise hides k
 _R_MAX = 0.98
 
 
@@ -26,13 +27,13 @@ class Inverted:
 
     index_front: Floats
     index_back: Floats
-    k: Floats  # 0 where nothing comes through: unknown there
+    k: Floats  # where nothing comes through only a lower bound
     crossing: Floats  # exp(-4 pi k d / lambda)
 
     @property
     def opaque(self) -> NDArray[np.bool_]:
         """Wavelengths where k cannot be had because nothing comes through."""
-        return np.asarray(self.crossing <= OPAQUE)
+        return np.asarray(self.crossing <= SEEN)
 
 
 def index_with(reflectance: Floats, k: Floats) -> Floats:
@@ -68,5 +69,4 @@ def invert(
     else:
         r1, r2, t = face_powers(transmit, front, back)
     k = -np.log(np.maximum(t, OPAQUE)) * wavelength_um / (4.0 * np.pi * thickness_um)
-    k = np.where(t > OPAQUE, k, 0.0)
     return Inverted(index_with(r1, k), index_with(r2, k), k, t)

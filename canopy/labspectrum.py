@@ -1,0 +1,303 @@
+"""A covering from a laboratory's spectrum: n and k where the physics allows, angle dependence from there.
+
+Where reflectance was not measured, nothing comes through, or the file ends, an assumption stands in and is
+said, with what it can matter.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Final, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from canopy.coveringfigures import figures
+from canopy.labcsv import LabSpectrum, read_lab_csv
+from canopy.layers import GLASS_DROPS, PLASTIC_DROPS
+from canopy.library_build import SOLIDS, LayerSpec, StackSpec, aged, assemble, optics_of
+from canopy.materials import Material
+from canopy.optics import Covering
+from canopy.sheet import Floats, Passage
+from canopy.sheets import EquivalentSheet, MaterialSheet, SpectralLayer
+from canopy.slabinverse import Inverted, index_with, invert
+from weather.errors import UserError
+
+__all__ = ["LabCovering", "covering_from_spectrum", "read_lab_csv"]
+
+Kind = Literal["glass", "rigid plastic", "film"]
+
+SOLAR_FROM_UM: Final = 0.40  # what a file must cover at least
+SOLAR_TO_UM: Final = 0.70
+THERMAL_FROM_UM: Final = 5.0  # a file that reaches from here to 14 µm carries the long-wave side too
+THERMAL_TO_UM: Final = 14.0
+_EDGE_UM: Final = 2.9  # between what the spectrum gives for sunlight and for long-wave
+_FILM_MM: Final = 0.5  # thinner is a film
+_GLASS_N: Final = 1.52
+_POLYMER_N: Final = 1.50
+_LOSS_PER_YEAR: Final[dict[Kind, float]] = {"glass": 0.0, "rigid plastic": 0.008, "film": 0.02}
+_FACE_SLACK: Final = 0.004  # front and back reflectance closer than this belong to equal faces
+_SMOOTH: Final = 21  # points over which noise is averaged before faces are called different
+_CLEAR: Final = 0.985  # T + R above which a coat on one face cannot be told from one on the other
+_LOW_INDEX: Final = 1.42  # below lies no glass and no common plastic but fluoropolymers
+_GAIN_SLACK: Final = 0.003  # T + R may exceed what a clear sheet gives by this much before it is said
+
+
+@dataclass(frozen=True)
+class LabCovering:
+    """The covering, the inverted sheet (W,), what was assumed and what the measurement does not allow."""
+
+    covering: Covering
+    wavelength_um: NDArray[np.float64]
+    inverted: Inverted
+    assumed: tuple[str, ...]
+    limits: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class JoinedSheet:
+    """One optics below 2.9 µm, another above."""
+
+    solar: SpectralLayer
+    thermal: SpectralLayer
+    haze: float = 0.0
+
+    def passage(self, wavelength_um: Floats, theta: Floats, water_um: float = 0.0) -> Passage:
+        """Return (2, W, M) powers; solar cells and thermal cells never mix in one call."""
+        part = self.solar if float(wavelength_um[0]) < _EDGE_UM and wavelength_um[-1] < 4.1 else self.thermal
+        return part.passage(wavelength_um, theta, water_um)
+
+
+def covering_from_spectrum(
+    path: Path,
+    name: str,
+    thickness_mm: float | None = None,
+    *,
+    kind: Kind | None = None,
+    wet: Literal["film", "drops", "none"] | None = None,
+    haze: float | None = None,
+    age_years: float = 0.0,
+) -> LabCovering:
+    """Return the covering whose single sheet has this spectrum at normal incidence.
+
+    Without thickness the sheet is taken as 4 mm (glass) and only k, mass and resistance depend on it. `kind`
+    None: thinner than .5 mm is film, else glass. `haze` stands in where the file has no
+    transmittance_diffuse column, and overrules it where it has. Raises UserError for a file that cannot be
+    read or does not cover 0.40-0.70 µm.
+    """
+    lab = read_lab_csv(path)
+    _require_cover(path, lab)
+    thickness = 4.0 if thickness_mm is None else thickness_mm
+    kind = kind or ("film" if thickness < _FILM_MM else "glass")
+    assumed, limits = list(lab.notes), list[str]()
+    if thickness_mm is None:
+        assumed.append("thickness not given: 4 mm (moves heat capacity and resistance, hardly light)")
+    front, back = _faces(lab, kind, assumed, limits)
+    found = invert(lab.wavelength_um, thickness * 1000.0, lab.transmit, front, back)
+    _say_limits(lab, found, limits)
+    share = _haze(lab, assumed) if haze is None else haze
+    optics = _optics(lab, found, thickness, kind, share, assumed)
+    covering = _record(path, name, thickness, kind, wet, optics, limits)
+    assumed.append(_reach(covering))
+    if age_years > 0.0:
+        loss = _LOSS_PER_YEAR[kind]
+        assumed.append(f"ageing not measured: {100.0 * loss:g} % of light a year, as the library's {kind}")
+        covering = aged(covering, loss, age_years)
+    return LabCovering(covering, lab.wavelength_um, found, tuple(assumed), tuple(limits))
+
+
+def _require_cover(path: Path, lab: LabSpectrum) -> None:
+    low, high = float(lab.wavelength_um[0]), float(lab.wavelength_um[-1])
+    if low > SOLAR_FROM_UM + 0.005 or high < SOLAR_TO_UM - 0.005:
+        raise UserError(
+            f"{path.name}: covers {low:g}-{high:g} µm; "
+            f"PAR needs at least {SOLAR_FROM_UM:g}-{SOLAR_TO_UM:g} µm"
+        )
+    inside = (lab.wavelength_um >= SOLAR_FROM_UM) & (lab.wavelength_um <= SOLAR_TO_UM)
+    if inside.sum() < 7:
+        raise UserError(f"{path.name}: {inside.sum()} points in .40-.70 µm; at least 7 are needed")
+
+
+def _faces(
+    lab: LabSpectrum, kind: Kind, assumed: list[str], limits: list[str]
+) -> tuple[Floats, Floats | None]:
+    """Return reflectance front and back (None: equal faces)."""
+    if lab.front is None and lab.back is None:
+        n = _GLASS_N if kind == "glass" else _POLYMER_N
+        limits.append(
+            f"no reflectance in the file: n cannot be had; {n:g} taken at all wavelengths "
+            "(n ± .1 moves transmission at 60° by about .01)"
+        )
+        r = ((n - 1.0) / (n + 1.0)) ** 2
+        t = np.minimum(lab.transmit / (1.0 - r) ** 2, 1.0)
+        t = np.clip(lab.transmit * (1.0 - r * r * t * t) / (1.0 - r) ** 2, 0.0, 1.0)
+        return np.asarray(r * (1.0 + t * lab.transmit)), None
+    if lab.front is None or lab.back is None:
+        assumed.append("reflectance measured on one side only: both faces taken as equal")
+        one = lab.front if lab.front is not None else lab.back
+        assert one is not None
+        return one, None
+    mean = 0.5 * (lab.front + lab.back)
+    window = min(_SMOOTH, lab.front.size)
+    smooth = np.convolve(lab.front - lab.back, np.full(window, 1.0 / window), mode="valid")
+    apart = float(np.max(np.abs(smooth)))
+    if apart <= _FACE_SLACK:
+        return mean, None
+    limits.append(
+        f"front and back reflectance differ by up to {apart:.3f}: a coated or layered sheet, not one n, k; "
+        "each face gets the index that gives its reflectance, which carries angles to about .02 at 60°"
+    )
+    clear = lab.transmit + mean > _CLEAR  # without absorption both sides reflect alike whatever the faces do
+    return np.where(clear, mean, lab.front), np.where(clear, mean, lab.back)
+
+
+def _spans(wavelength: Floats, where: NDArray[np.bool_]) -> list[str]:
+    """Return the wavelength ranges (µm) where a mask holds; holes under 4 % are closed, specks left out."""
+    spans: list[list[float]] = []
+    for at in wavelength[where]:
+        if spans and at <= 1.04 * spans[-1][1]:
+            spans[-1][1] = float(at)
+            spans[-1][2] += 1
+        else:
+            spans.append([float(at), float(at), 1])
+    return [f"{a:.3g}-{b:.3g}" for a, b, count in spans if count > 2]
+
+
+def _say_limits(lab: LabSpectrum, found: Inverted, limits: list[str]) -> None:
+    """Say where n and k cannot be had, and where the numbers cannot be a plane sheet."""
+    dark = _spans(lab.wavelength_um, found.opaque)
+    if dark:
+        limits.append(
+            f"nothing comes through at {', '.join(dark)} µm: k cannot be had there, n is the real index that "
+            "gives the reflectance (exact for emissivity at normal, up to .03 off for slanted long-wave "
+            "where the sheet reflects strongly, as glass at 9-10 µm)"
+        )
+    face = np.asarray(((found.index_front - 1.0) / (found.index_front + 1.0)) ** 2)
+    most = (1.0 - face) / (1.0 + face)
+    over = _spans(lab.wavelength_um, (lab.transmit > most + _GAIN_SLACK) & (found.crossing >= 1.0))
+    if over:
+        limits.append(
+            f"transmittance + reflectance exceeds 1 at {', '.join(over)} µm: "
+            "taken as free of absorption there"
+        )
+    visible = (lab.wavelength_um > 0.45) & (lab.wavelength_um < SOLAR_TO_UM)
+    index = float(np.median(found.index_front[visible]))
+    if index < _LOW_INDEX:
+        limits.append(
+            f"reflectance in PAR belongs to an index of {index:.2f}: an anti-reflection coat (on which face "
+            "cannot be told) or a fluoropolymer; a coat's angle dependence is carried as that of the low "
+            "index, within about .02 at 60°"
+        )
+    if _fringes(lab):
+        limits.append("the values wave with wavelength: interference of a thin film; bands take the mean")
+
+
+def _fringes(lab: LabSpectrum) -> bool:
+    """Say whether transmittance swings regularly in wavenumber: one frequency holds half of the swing."""
+    w = lab.wavelength_um
+    inside = (w > 0.45) & (w < 1.6)
+    if inside.sum() < 40:
+        return False
+    number = np.linspace(1.0 / w[inside][-1], 1.0 / w[inside][0], 256)
+    t = np.interp(number, 1.0 / w[inside][::-1], lab.transmit[inside][::-1])
+    x = np.linspace(-1.0, 1.0, 256)
+    rest = (t - np.polyval(np.polyfit(x, t, 5), x)) * np.hanning(256)
+    power = np.abs(np.fft.rfft(rest)) ** 2
+    peak = int(np.argmax(power))
+    near = power[max(0, peak - 2) : peak + 3].sum() / max(float(power.sum()), 1e-30)
+    return peak >= 4 and float(near) > 0.5 and float(rest.std()) > 0.003
+
+
+def _haze(lab: LabSpectrum, assumed: list[str]) -> float:
+    if lab.scattered is None:
+        assumed.append("haze not measured: 0 (clear); quote it in [[covering]] if the sheet scatters")
+        return 0.0
+    par = (lab.wavelength_um >= SOLAR_FROM_UM) & (lab.wavelength_um <= SOLAR_TO_UM)
+    return float(np.clip(lab.scattered[par].mean() / max(lab.transmit[par].mean(), 1e-9), 0.0, 1.0))
+
+
+def _material(name: str, wavelength: Floats, found: Inverted, where: NDArray[np.bool_]) -> Material:
+    n = found.index_front[where]
+    return Material(name, name, wavelength[where], n, found.k[where], "laboratory spectrum", "user's own", "")
+
+
+def _sheet(lab: LabSpectrum, found: Inverted, where: NDArray[np.bool_], thickness_m: float) -> SpectralLayer:
+    """Return the sheet on part of the spectrum: by n and k, or by faces where these do not exist."""
+    w = lab.wavelength_um[where]
+    equal = bool(np.array_equal(found.index_front, found.index_back))
+    if equal:
+        return MaterialSheet(_material("laboratory", lab.wavelength_um, found, where), thickness_m)
+    return EquivalentSheet(found.index_front[where], found.index_back[where], found.crossing[where], w)
+
+
+def _optics(
+    lab: LabSpectrum,
+    found: Inverted,
+    thickness_mm: float,
+    kind: Kind,
+    haze: float,
+    assumed: list[str],
+) -> JoinedSheet:
+    """Return sunlight and long-wave sides; ends of the file held, missing long-wave assumed."""
+    w = lab.wavelength_um
+    below = w <= _EDGE_UM
+    if w[0] > 0.285:
+        assumed.append(f"no data below {w[0]:.3g} µm: the first values hold down to .28 µm")
+    if w[below][-1] < 2.45:
+        assumed.append(f"no data from {w[below][-1]:.3g} µm up: the last values hold to 2.8 µm")
+    solar = _sheet(lab, found, below, thickness_mm / 1000.0)
+    above = w >= _EDGE_UM
+    if above.any() and w[above][0] <= THERMAL_FROM_UM and w[-1] >= THERMAL_TO_UM:
+        if w[-1] < 40.0:
+            assumed.append(f"no data beyond {w[-1]:.3g} µm: the last values hold to 100 µm")
+        return JoinedSheet(solar, _sheet(lab, found, above, thickness_mm / 1000.0), haze)
+    return JoinedSheet(solar, _assumed_thermal(thickness_mm, kind, assumed), haze)
+
+
+def _assumed_thermal(thickness_mm: float, kind: Kind, assumed: list[str]) -> SpectralLayer:
+    """Long-wave side of a sheet that was measured in sunlight only."""
+    if kind == "film":
+        assumed.append(
+            "no long-wave data: taken as plain polyethylene of this thickness; an infrared-absorbing film "
+            "passes .2-.3 instead of .6, worth about 30 W/m2 of covering on a clear night"
+        )
+        return MaterialSheet("polyethylene", thickness_mm / 1000.0)
+    assumed.append(
+        "no long-wave data: taken as opaque, emissivity .89 normal (glass, rigid plastics .84-.91)"
+    )
+    reflect = index_with(np.array([0.11, 0.11]), np.zeros(2))
+    return EquivalentSheet(reflect, reflect, np.zeros(2), np.array([3.0, 100.0]))
+
+
+def _record(
+    path: Path,
+    name: str,
+    thickness_mm: float,
+    kind: Kind,
+    wet: Literal["film", "drops", "none"] | None,
+    optics: JoinedSheet,
+    limits: list[str],
+) -> Covering:
+    solid = SOLIDS[{"glass": "soda-lime-clear", "film": "polyethylene"}.get(kind, "polycarbonate")]
+    layer = LayerSpec(optics, f"laboratory sheet {thickness_mm:g} mm", thickness_mm / 1000.0, solid)
+    stack = StackSpec((layer,), (), (), None, GLASS_DROPS if kind == "glass" else PLASTIC_DROPS)
+    state = wet or ("drops" if kind == "film" else "film")
+    dry = optics_of(stack, "dry")
+    moist = dry if state == "none" else optics_of(stack, state)
+    entry = {
+        "name": name,
+        "title": f"{name} (laboratory spectrum)",
+        "kind": kind,
+        "provenance": "computed",
+        "source": f"laboratory spectrum {path.name}, inverted to n and k; {len(limits)} limits said",
+    }
+    return assemble(entry, stack, dry, moist)
+
+
+def _reach(covering: Covering) -> str:
+    got = figures(covering)
+    return (
+        f"from the spectrum follow: par_normal {got.par_normal:.3f}, par_hemispherical "
+        f"{got.par_hemispherical:.3f}, thermal_transmittance {got.thermal_transmittance:.3f}"
+    )
