@@ -121,13 +121,13 @@ class HouseKeys(Section):
     pitch_other: Annotated[float, Field(ge=0, le=85)] | None = None
     rise: Annotated[float, Field(gt=0, le=15)] | None = None
     ridge_azimuth: Annotated[float, Field(ge=0, le=360)] = 0.0
-    gutter_width: Annotated[float, Field(ge=0, le=2)] = 0.2
-    gutter_depth: Annotated[float, Field(ge=0, le=1)] = 0.15
+    gutter_width: Annotated[float, Field(ge=0, le=2)] = 0.25
+    gutter_depth: Annotated[float, Field(ge=0, le=1)] = 0.18
     ridge_width: Annotated[float, Field(ge=0, le=1)] = 0.06
     ridge_depth: Annotated[float, Field(ge=0, le=1)] = 0.08
-    bar_spacing: Annotated[float, Field(ge=0, le=10)] = 1.1
-    bar_width: Annotated[float, Field(ge=0, le=0.5)] = 0.03
-    bar_depth: Annotated[float, Field(ge=0, le=0.5)] = 0.04
+    bar_spacing: Annotated[float, Field(ge=0, le=10)] = 1.12
+    bar_width: Annotated[float, Field(ge=0, le=0.5)] = 0.04
+    bar_depth: Annotated[float, Field(ge=0, le=0.5)] = 0.06
     leakage_per_hour: Annotated[float, Field(ge=0, le=20)] | None = None
     vent_area_fraction: Annotated[float, Field(ge=0, le=1)] = 0.15
     insect_net: bool = False
