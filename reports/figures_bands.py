@@ -124,8 +124,7 @@ def band_figure(budgets: tuple[BandBudget, ...]) -> Figure:
         "bands",
         "Where the sunlight of each band ends",
         "One bar per band of sunlight, in per cent of what that band brings outside: absorbed by leaves, by "
-        "the floor, by the "
-        "covering, by screens, by gutters, ridges and bars, or sent back out.",
+        "the floor, by the covering, by screens, by gutters, ridges and bars, or sent back out.",
         tuple(band_spec(b) for b in budgets),
         tuple(shown),
         330,
@@ -178,8 +177,7 @@ def band_words(b: BandBudget, name: str) -> str:
     heat = b.crop.sum() + b.ground.sum()
     return (
         f"Under {name}, leaves take up {percent(to_leaves)} of the outside PAR energy and "
-        f"{percent(nir_leaves)} of the NIR "
-        "(far-red included); of the sunlight that warms leaves and floor, "
-        f"{number(100 * b.crop[nir].sum() / max(heat, 1e-12))}\u202f% "
-        "is NIR in the leaves, which warms the crop and feeds hardly any photosynthesis."
+        f"{percent(nir_leaves)} of the NIR (far-red included); of the sunlight that warms leaves and floor, "
+        f"{number(100 * b.crop[nir].sum() / max(heat, 1e-12))}\u202f% is NIR in the leaves, which warms the "
+        "crop and feeds hardly any photosynthesis."
     )

@@ -83,8 +83,7 @@ def climate_figure(run: Run, show: Display) -> Figure:
         "climate",
         "Temperature and humidity, day by day",
         "Upper part: the span between lowest and highest house air temperature of each day, its mean, and "
-        "the mean outside. Lower "
-        "part: the highest relative humidity of the day.",
+        "the mean outside. Lower part: the highest relative humidity of the day.",
         tuple(_spec(run, one, show, low, high) for one in run.candidates),
         (INSIDE, MEAN, AIR_OUT, HUMID),
         430,

@@ -100,8 +100,7 @@ def balance_figure(run: Run, rows: Sequence[Summary], show: Display) -> Figure:
         "balance",
         "Where the warmth comes from and where it goes",
         "Two bars per candidate. The upper one adds sunlight absorbed and heating, the lower one adds every "
-        "loss; both "
-        "are equally long but for what the ground keeps.",
+        "loss; both are equally long but for what the ground keeps.",
         (spec,),
         tuple(mark for mark, _, _ in FLOWS),
         110 + 62 * len(rows),
@@ -189,9 +188,8 @@ def duration_figure(run: Run, show: Display) -> Figure:
     return Figure(
         "duration",
         "How many hours need how much heat",
-        "Heating load in order of size. Across: hours of the record with at least that load, on a scale that "
-        "widens the few "
-        "coldest hours; dotted lines at 35 and 88 hours.",
+        "Heating load in order of size. Across: hours of the record with at least that load, on a scale "
+        "that widens the few coldest hours; dotted lines at 35 and 88 hours.",
         (
             {
                 "data": traces,

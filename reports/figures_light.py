@@ -80,8 +80,7 @@ def month_light_figures(run: Run, outside: Floats, inside: Sequence[Floats]) -> 
             "dli",
             "Daily light (DLI) at the top of the crop",
             "Mean daily PAR light by month, outside and at the top of the crop under each candidate; the "
-            "table below "
-            "has the numbers.",
+            "table below has the numbers.",
             ({"data": traces, "layout": layout(axis("", showgrid=False), y)},),
             (OUTSIDE, *marks),
             360,

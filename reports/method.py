@@ -8,9 +8,8 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
     (
         "Weather",
         "Read as it is labelled, shifted to where the radiation really stands, checked, gaps filled and "
-        "marked. "
-        "Missing parts are computed: diffuse from global, water vapour from humidity, clear sky from "
-        "turbidity.",
+        "marked. Missing parts are computed: diffuse from global, water vapour from humidity, clear sky "
+        "from turbidity.",
         "Jensen & Perez 2024 (continuous Erbs); Gueymard 1994; Ineichen & Perez 2002, through pvlib",
     ),
     (
@@ -20,73 +19,66 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
     ),
     (
         "Sunlight by band",
-        "A clear-sky spectrum by air mass and water vapour, corrected for cloud, split into UV, PAR, far-red "
-        "and "
-        "two bands of NIR; photons from the same spectrum.",
+        "A clear-sky spectrum by air mass and water vapour, corrected for cloud, split into UV, PAR, "
+        "far-red and two bands of NIR; photons from the same spectrum.",
         "Bird & Riordan 1986 (SPECTRL2), through pvlib",
     ),
     (
         "Sky long-wave",
         "Where the file has none: clear-sky emissivity with a daily wave, raised by cloud as the sun tells "
-        "it and "
-        "blended through the night. Split into the atmospheric window (8–14 µm) and the rest.",
+        "it and blended through the night. Split into the atmospheric window (8–14 µm) and the rest.",
         "Prata 1996; Crawford & Duchon 1999; Berdahl & Fromberg 1982",
     ),
     (
         "Covering",
         "Each sheet by Fresnel's laws and absorption with all inner reflections, both polarisations apart; "
-        "layers "
-        "added up; dry and with a wet inner face. Beam angle by angle, diffuse light over the half-sphere.",
+        "layers added up; dry and with a wet inner face. Beam angle by angle, diffuse light over the "
+        "half-sphere.",
         "Stokes 1862; Byrnes 2016; optical constants as named with each covering",
     ),
     (
         "House",
         "The beam is followed exactly through roofs, walls and gables with the first mirror reflection; "
-        "gutters "
-        "and ridges are boxes with depth, bars shade by angle; the sky is integrated over the half-sphere, "
-        "brighter round the sun and at the horizon.",
+        "gutters and ridges are boxes with depth, bars shade by angle; the sky is integrated over the "
+        "half-sphere, brighter round the sun and at the horizon.",
         "plane geometry; Perez et al. 1990",
     ),
     (
         "Crop",
         "Leaves that scatter, band by band, by discrete ordinates; leaf angles by an ellipsoid; sunlit and "
-        "shaded "
-        "leaves apart; light passes to and fro between leaves, floor and covering until it is absorbed or "
-        "out.",
+        "shaded leaves apart; light passes to and fro between leaves, floor and covering until it is "
+        "absorbed or out.",
         "Campbell 1986 and 1990; Ross 1981; Stamnes & Swanson 1981",
     ),
     (
         "Long-wave inside",
         "Floor, pipes, leaves, screens, covering layers and sky exchange in three bands, each surface "
-        "emitting at "
-        "its own temperature, with transmission and reflection of every layer and all inter-reflections.",
+        "emitting at its own temperature, with transmission and reflection of every layer and all "
+        "inter-reflections.",
         "Planck's law (Chang & Rhee 1984); adding method",
     ),
     (
         "Convection and air",
-        "Outer and inner convection by form of the house, gaps between layers, leakage and vents by wind and "
-        "temperature difference.",
+        "Outer and inner convection by form of the house, gaps between layers, leakage and vents by wind "
+        "and temperature difference.",
         "Bot 1983; De Zwart 1996; Frangoudakis & Kyritsis 1992; Boulard & Baille 1995; EN 673",
     ),
     (
         "Water",
         "Transpiration of sunlit and shaded leaves, evaporation from the floor, condensation as a film that "
-        "grows, "
-        "dries and runs off; a humidity limit held by venting.",
+        "grows, dries and runs off; a humidity limit held by venting.",
         "Stanghellini 1987; Lewis's analogy; ASHRAE Fundamentals ch. 1",
     ),
     (
         "Stores and solving",
         "Air, vapour, crop, pipes, covering and a soil column store heat. All hours are solved together "
-        "until each "
-        "closes; an hour that does not is solved again by another route.",
+        "until each closes; an hour that does not is solved again by another route.",
         "Newton's method; Kusuda & Achenbach 1965 for the deep ground",
     ),
     (
         "Heating size",
-        "From the hours in order of size, and as a design night worked out step by step; a paper calculation "
-        "with "
-        "U-values stands beside it.",
+        "From the hours in order of size, and as a design night worked out step by step; a paper "
+        "calculation with U-values stands beside it.",
         "ASHRAE Fundamentals ch. 14; EN 673; Dinkelbach 1967 for the heat store",
     ),
 )

@@ -32,9 +32,8 @@ def range_words(run: Run) -> str | None:
     points = f"±{low}" if low == high else f"±{low} to ±{high}"
     return (
         f"From product to product, the diffuse PAR of the coverings compared here lies {points} points "
-        "around the figure "
-        "used. Smaller differences in light are no differences. The ranges stand under inputs; they were not "
-        "carried through the year."
+        "around the figure used. Smaller differences in light are no differences. The ranges stand under "
+        "inputs; they were not carried through the year."
     )
 
 

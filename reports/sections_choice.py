@@ -114,8 +114,8 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
         blocks.append(
             Text(
                 (
-                    "Not every candidate stands on the same house. Where it does not, part of the difference "
-                    "in light, leakage and heat belongs to the house and not to the covering:",
+                    "Not every candidate stands on the same house. Where it does not, part of the "
+                    "difference in light, leakage and heat belongs to the house and not to the covering:",
                 )
             )
         )
@@ -130,16 +130,15 @@ def light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     best, worst = int(np.argmin(outside)), int(np.argmax(outside))
     months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
     lead = [
-        f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]} "
-        f"and {number(outside[worst], 1)} in {months[worst]}."
+        f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]} and "
+        f"{number(outside[worst], 1)} in {months[worst]}."
     ]
     at_best = [values[best] for values in inside]
     if all(np.isfinite(at_best)) and len(rows) > 1:
         top, low = int(np.argmax(at_best)), int(np.argmin(at_best))
         lead.append(
             f"In {months[best]} the crop gets {number(at_best[top], 1)} mol/m² a day under {rows[top].name} "
-            "and "
-            f"{number(at_best[low], 1)} under {rows[low].name}."
+            f"and {number(at_best[low], 1)} under {rows[low].name}."
         )
     elif len(rows) == 1 and np.isfinite(at_best[0]):
         lead.append(f"In {months[best]} the crop gets {number(at_best[0], 1)} mol/m² a day.")

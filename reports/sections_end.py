@@ -76,8 +76,7 @@ def climate(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     if wet.total["leaf_wet_h"] >= 1:
         lead.append(
             f"Leaves are at or below the dew point for up to {number(wet.total['leaf_wet_h'])} hours "
-            f"({wet.name}): a sign of where "
-            "leaf disease starts."
+            f"({wet.name}): a sign of where leaf disease starts."
         )
     frost = [r for r in rows if r.total["frost_h"] > 0]
     if frost:
@@ -138,9 +137,8 @@ def inputs(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     weather, site = run.weather, run.weather.site
     lead = (
         f"{weather.title}: {site.latitude:g}°, {site.longitude:g}°, {show.say(site.elevation, 'm')} above "
-        "the sea, clock of the weather "
-        f"file UTC{zone_offset(weather.utc_offset_h)}, schedules in {site.timezone} time. "
-        f"{number(len(run.hours))} hours are reported. Source: {weather.source}.",
+        f"the sea, clock of the weather file UTC{zone_offset(weather.utc_offset_h)}, schedules in "
+        f"{site.timezone} time. {number(len(run.hours))} hours are reported. Source: {weather.source}.",
     )
     notes = [f"{one.plan.name}: {note}" for one in run.candidates for note in (*one.notes, *one.heat.notes)]
     blocks: list[Block | Each | Chooser] = [Text(lead, lead=True), _input_table(run), _sources(run)]
@@ -170,8 +168,10 @@ def weather(run: Run) -> Section:
     found = run.weather.findings
     filled = int(run.weather.filled[run.hours].sum())
     lead = (
-        f"{number(filled)} of {number(len(run.hours))} reported hours hold a filled value; "
-        "each is marked in hourly.csv."
+        f"{number(filled)} of {number(len(run.hours))} reported hours hold a filled value; each is marked in "
+        "hourly.csv."
+        if filled
+        else "No reported hour holds a filled value."
     )
     if not found:
         blocks: tuple[Block, ...] = (Text((lead, "The checks found nothing to report."), lead=True),)
@@ -209,8 +209,7 @@ def closing(run: Run) -> Section:
             )
     lead = (
         f"Every budget of every candidate closes: the largest gap in any hour is {worst:.1e} W/m². A run "
-        "with an hour that stays open "
-        "above 0.1 W/m² ends without a report."
+        "with an hour that stays open above 0.1 W/m² ends without a report."
     )
     retried = sum(one.heat.retried_hours for one in run.candidates)
     extra = (f"{number(retried)} hours were solved again by a second route.",) if retried else ()

@@ -27,9 +27,8 @@ def grey(run: Run, rows: Sequence[Summary], show: Display) -> Section | None:
         return None
     worst, g, _ = max(found, key=lambda item: abs(item[1].grey_heat_kwh - item[1].heat_kwh))
     lead = (
-        "Some coverings pass long-wave radiation in some bands and stop it in others. A calculation with one "
-        "mean "
-        "value for all wavelengths, as U-values and plain emissivities are, gets these wrong.",
+        "Some coverings pass long-wave radiation in some bands and stop it in others. A calculation with "
+        "one mean value for all wavelengths, as U-values and plain emissivities are, gets these wrong.",
         f"With {worst.name} one grey band would have said {show.say(g.grey_heat_kwh, 'kWh/m2')} of heat "
         f"{say.period(run)} instead of {show.say(g.heat_kwh, 'kWh/m2')}: "
         f"{_off(g.grey_heat_kwh, g.heat_kwh)}.",

@@ -76,8 +76,7 @@ def house_light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         if np.isfinite([low, high]).all():
             lead.append(
                 f"With {rows[0].name}, {percent(float(low))} of the direct light arrives when the sun stands "
-                "below "
-                f"{STEP_DEG:g}°, {percent(float(high))} at {labels[-1]}."
+                f"below {STEP_DEG:g}°, {percent(float(high))} at {labels[-1]}."
             )
     blocks: list[Block | Each | Chooser] = [Text(tuple(lead), lead=True)]
     if labels:

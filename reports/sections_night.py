@@ -29,15 +29,14 @@ def nights(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         "nights",
         "Sky loss by hour of the night",
         "Mean net long-wave loss to the sky by hour of the night, clearest third of nights on the left, "
-        "cloudiest third on the "
-        "right; the dark part passes straight through the covering, the hatched part leaves its outer skin.",
+        "cloudiest third on the right; the dark part passes straight through the covering, the hatched part "
+        "leaves its outer skin.",
         night_specs(run, kept, show),
         (THROUGH, SKIN),
         340,
         per_candidate=True,
         note="Hours of the weather file's standard time; only hours with the sun below the horizon count. "
-        "Clearness: what a black "
-        "surface at air temperature sends up, less what the sky sends down.",
+        "Clearness: what a black surface at air temperature sends up, less what the sky sends down.",
     )
     table = Table(
         "What the night sky takes",
@@ -79,9 +78,8 @@ def _night_words(
     span = say.period(run)
     lines = [
         f"Most is lost by {rows[high].name}: {show.say(rows[high].total['night_sky_loss_kwh_m2'], 'kWh/m2')} "
-        "to the night sky "
-        f"{span}, {percent(patterns[high].through_share)} of it straight through the covering from leaves, "
-        "floor and screens."
+        f"to the night sky {span}, {percent(patterns[high].through_share)} of it straight through the "
+        "covering from leaves, floor and screens."
     ]
     if low != high:
         lines.append(
@@ -93,7 +91,6 @@ def _night_words(
     if np.isfinite(clear) and np.isfinite(cloudy):
         lines.append(
             f"On the clearest third of nights the sky takes {show.say(clear, 'W/m2')} from "
-            f"{rows[high].name}, on the cloudiest "
-            f"third {show.say(cloudy, 'W/m2')}."
+            f"{rows[high].name}, on the cloudiest third {show.say(cloudy, 'W/m2')}."
         )
     return tuple(lines)

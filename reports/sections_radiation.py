@@ -93,12 +93,15 @@ def thermal_words(one: CandidateRun) -> str:
     """Return in a sentence what the covering does in the window of the sky."""
     at = THERMAL.names.index("8-14")
     dry, wet = whole_thermal(one.covering.thermal_dry), whole_thermal(one.covering.thermal_wet)
+    in_dry, in_wet = (_some(float(heat.transmit[at])) for heat in (dry, wet))
     return (
-        f"In the window of the sky (8–14 µm), where a clear night is coldest, this covering passes "
-        f"{percent(float(dry.transmit[at]))} of the long-wave when dry and "
-        f"{percent(float(wet.transmit[at]))} when "
-        "wet inside."
+        f"In the window of the sky (8–14 µm), where a clear night is coldest, this covering passes {in_dry} "
+        f"of the long-wave when dry and {in_wet} when wet inside."
     )
+
+
+def _some(share: float) -> str:
+    return percent(share) if share >= 0.005 else "nothing"
 
 
 def crop(run: Run, rows: Sequence[Summary], show: Display) -> Section:
@@ -111,8 +114,8 @@ def crop(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     lead = [
         f"Under {top.name} leaves absorb {show.say(top.crop_mol, 'mol/m2')} of PAR {say.period(run)}: "
         f"{percent(top.crop_mol / top.outside_mol)} of what falls outside and "
-        f"{percent(top.crop_mol / top.inside_mol)} of what reaches "
-        "the top of the crop. The rest meets the floor, goes back up, or comes while leaves are few."
+        f"{percent(top.crop_mol / top.inside_mol)} of what reaches the top of the crop. The rest meets the "
+        "floor, goes back up, or comes while leaves are few."
     ]
     labels = month_labels(run.months)
     table = Table(

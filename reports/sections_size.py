@@ -35,9 +35,8 @@ def size(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     blocks.append(
         Text(
             (
-                "A planning figure: local codes, the designer's margins and licensed design come first. Read "
-                "the cautions below on "
-                "snow, power failure and combustion air before ordering.",
+                "A planning figure: local codes, the designer's margins and licensed design come first. "
+                "Read the cautions below on snow, power failure and combustion air before ordering.",
             )
         )
     )
@@ -123,8 +122,9 @@ def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
         blocks.append(_outside_table(night, show))
         if show.system == "us":
             blocks.append(Text(("In SI units, as worked:",)))
-        lines = night.hand.text, f"Recovery after the night: {night.recovery.text}."
-        blocks.append(Points(tuple(map(pretty, lines))))
+        on_paper = f"On paper: {night.hand.text}."
+        recovery = f"Recovery after the night: {night.recovery.text}."
+        blocks.append(Points((pretty(on_paper), *([pretty(recovery)] if show.system == "us" else []))))
     if show.system == "si":
         blocks.append(Points(tuple(map(pretty, one.sizing.explained))))
     if one.sizing.finite is not None:
@@ -173,19 +173,15 @@ def _outside_table(night: Any, show: Display) -> Table:
 
 def _finite_words(one: CandidateRun, show: Display) -> str:
     run = one.sizing.finite
+    size, low = show.say(run.capacity_w_m2, "W/m2"), show.say(run.lowest_air_c, "degC")
     if not run.solved_again:
-        return (
-            f"A boiler of {show.say(run.capacity_w_m2, 'W/m2')} is never at its limit in this record; the "
-            "lowest house air is "
-            f"{show.say(run.lowest_air_c, 'degC')}."
-        )
+        return f"A boiler of {size} is never at its limit in this record; the lowest house air is {low}."
+    limited = say.count(run.limited_h, "hour", "hours")
+    short = say.count(run.deficit_h, "hour", "hours")
     return (
-        f"With a boiler of {show.say(run.capacity_w_m2, 'W/m2')} the year was run again: it is at its limit "
-        "in "
-        f"{number(run.limited_h)} hours, the air is short of its set-point in {number(run.deficit_h)} hours "
-        f"({number(run.deficit_kh)} kelvin hours), and the lowest house air is "
-        f"{show.say(run.lowest_air_c, 'degC')} on "
-        f"{say.hour_words(run.lowest_at)}."
+        f"With a boiler of {size} the year was run again: it is at its limit in {limited}, the air is short "
+        f"of its set-point in {short} ({number(run.deficit_kh)} kelvin hours), and the lowest house air is "
+        f"{low} on {say.hour_words(run.lowest_at)}."
     )
 
 
@@ -226,8 +222,7 @@ def _store_table(one: CandidateRun, show: Display) -> Table:
     )
     return Table(
         f"Smallest boiler beside a heat store of {number(s.spread_k)} K: {one.plan.name}. Perfect foresight; "
-        "last column with "
-        f"{number(s.reserve_pct)}\u202f% operating reserve",
+        f"last column with {number(s.reserve_pct)}\u202f% operating reserve",
         ("store", "holds", "smallest boiler", "with reserve"),
         rows,
         ("", show.text("kWh/m2"), show.text("W/m2"), show.text("W/m2")),

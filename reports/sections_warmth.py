@@ -50,8 +50,7 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         air = base.total["air_change_loss_kwh_m2"] + base.total["venting_kwh_m2"]
         lines.append(
             f"Of all that leaves this house, {percent(base.total['sky_loss_kwh_m2'] / total)} goes to the "
-            "sky as "
-            f"long-wave radiation and {percent(air / total)} with the air that leaks out or is vented."
+            f"sky as long-wave radiation and {percent(air / total)} with the air that leaks out or is vented."
         )
     damp = max(rows, key=lambda r: r.total["heat_for_humidity_kwh_m2"])
     damp_kwh = damp.total["heat_for_humidity_kwh_m2"]
@@ -86,24 +85,22 @@ def _saving_words(rows: Sequence[Summary], savings: Sequence[Saving], show: Disp
         return f"No candidate takes less heat than {rows[0].name}; the table says where the others lose more."
     parts = sorted(zip(most.paths, (title for title, _ in LOSS_PATHS), strict=True), reverse=True)[:2]
     kept = say.listed([f"{show.say(kwh, 'kWh/m2')} less {title}" for kwh, title in parts if kwh > 0])
-    text = f"The {show.say(most.heat, 'kWh/m2')} that {name} saves against {rows[0].name} come mostly from "
-    text += kept
-    if most.sun < 0:
-        text += f"; {show.say(-most.sun, 'kWh/m2')} less sunlight in heated hours works against it"
+    saved = show.say(most.heat, "kWh/m2")
     return (
-        f"{text}. Leakage and the ground belong to the house; the other paths to the covering and its "
-        "screens, as far as the house is the same."
+        f"The most is saved by {name}, {saved} against {rows[0].name}; in the dark, {kept}. Leakage and the "
+        "ground belong to the house; the other paths to the covering and its screens, as far as the house "
+        "is the same."
     )
 
 
 def _saving_table(run: Run, rows: Sequence[Summary], savings: Sequence[Saving], show: Display) -> Table:
     body = []
     for r, s, mark in zip(rows[1:], savings, marks_of(run)[1:], strict=True):
-        cells = [show.bare(kwh, "kWh/m2", 1) for kwh in (*s.paths, s.sun, s.heat)]
+        cells = [show.bare(kwh, "kWh/m2", 1) for kwh in (*s.paths, s.by_day, s.heat)]
         body.append(Row(r.name, tuple(cells), mark))
-    titles = [title for title, _ in LOSS_PATHS]
+    titles = [f"less {title}" for title, _ in LOSS_PATHS]
     return Table(
-        f"Lost less than with {rows[0].name}, over the heated hours, {show.text('kWh/m2')}",
-        ("candidate", *titles, "sunlight gained more", "heat saved"),
+        f"Heat saved against {rows[0].name}, {show.text('kWh/m2')}: by paths in the dark, and by day",
+        ("candidate", *titles, "by day", "heat saved"),
         tuple(body),
     )

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from canopy.fuel import FuelUse
 from canopy.run import Run
 from reports import sentences as say
@@ -92,20 +94,14 @@ def energy_table(run: Run, show: Display) -> Table | None:
     if not rows:
         return None
     whole = say.period(run) if len(run.hours) == len(run.weather) else "whole record"
+    heads = ("supply", "bought", "gross heating value", "electricity", "heat pump, seasonal", "CO₂", "cost")
+    units = ("", "", gross.text, "kWh", "", tonnes.text, "")
+    kept = [k for k in range(len(heads)) if any(row.cells[k] != NONE for row in rows)]
     return Table(
         f"Fuel for the whole house, {whole}" + ("" if priced else "; no price is given in the study"),
-        (
-            "candidate",
-            "supply",
-            "bought",
-            "gross heating value",
-            "electricity",
-            "heat pump, seasonal",
-            "CO₂",
-            "cost",
-        ),
-        tuple(rows),
-        ("", "", "", gross.text, "kWh", "", tonnes.text, ""),
+        ("candidate", *(heads[k] for k in kept)),
+        tuple(replace(row, cells=tuple(row.cells[k] for k in kept)) for row in rows),
+        ("", *(units[k] for k in kept)),
         words=True,
     )
 

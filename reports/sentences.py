@@ -123,8 +123,7 @@ def answer(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     also = " as well" if bright is cool else ""
     lines.append(
         f"Most light: {bright.name}{also}, {show.say(bright.inside_mol, 'mol/m2')} of PAR at the top of the "
-        f"crop {span}, "
-        f"{percent(bright.light_share)} of what falls outside."
+        f"crop {span}, {percent(bright.light_share)} of what falls outside."
     )
     return tuple(lines)
 
@@ -136,10 +135,8 @@ def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         dark = change(one.dark_inside_mol, base.dark_inside_mol, "light")
         text = (
             f"Against {base.name}, {one.name} takes {change(one.heat_kwh, base.heat_kwh, 'heat')} and gives "
-            "the crop "
-            f"{change(one.inside_mol, base.inside_mol, 'light')} ({dark} in {dark_words(run)}); the largest "
-            "hour takes "
-            f"{show.say(one.peak_w, 'W/m2')} instead of {show.say(base.peak_w, 'W/m2')}."
+            f"the crop {change(one.inside_mol, base.inside_mol, 'light')} ({dark} in {dark_words(run)}); the "
+            f"largest hour takes {show.say(one.peak_w, 'W/m2')} instead of {show.say(base.peak_w, 'W/m2')}."
         )
         saved, lost = base.heat_kwh - one.heat_kwh, base.inside_mol - one.inside_mol
         if saved > SAME * base.heat_kwh and lost > SAME * base.inside_mol:
@@ -161,15 +158,13 @@ def verdicts(rows: Sequence[Summary]) -> tuple[str, ...]:
     """Return who is beaten in light, heat and peak at once, and what the figures leave open."""
     lines = [
         f"Beaten on all three counts: {worse.name} gives less light than {better.name}, needs more heat and "
-        "has a "
-        "larger peak."
+        "has a larger peak."
         for worse, better in beaten(tuple(rows))
     ]
     if len(rows) > 1:
         lines.append(
-            "Which one pays is a matter of the price of heat, of the worth of the light at your crop, and of "
-            "what "
-            "each covering costs, lasts and weighs. These figures say what each gives and takes."
+            "Which one pays is a matter of the price of heat, of the worth of the light at your crop, and "
+            "of what each covering costs, lasts and weighs. These figures say what each gives and takes."
         )
     return tuple(lines)
 
@@ -180,22 +175,16 @@ def doubts(run: Run) -> tuple[str, ...]:
     if weather.clear_sky:
         lines.append(
             "The weather is a computed clear-sky record: light is an upper bound, and nights are colder for "
-            "the "
-            "roof than real ones."
+            "the roof than real ones."
         )
     if weather.typical:
         lines.append(
-            "The weather is a typical year: months from different years, the extremes removed. Season totals "
-            "are "
-            "ordinary ones; the largest hour is not a sizing figure."
+            "The weather is a typical year: months from different years, the extremes removed. Season "
+            "totals are ordinary ones; the largest hour is not a sizing figure."
         )
     if weather.longwave_modelled.any():
-        share = float(weather.longwave_modelled[run.hours].mean())
-        lines.append(
-            f"Long-wave radiation from the sky is computed, not measured, in {percent(share)} of the hours; "
-            "such models "
-            "miss single hours by 14-20 W/m² (root mean square on measured records)."
-        )
+        share = percent(float(weather.longwave_modelled[run.hours].mean()))
+        lines.append(f"Long-wave radiation from the sky is computed, not measured, in {share} of the hours.")
     ranges = range_words(run)
     return tuple(lines) if ranges is None else (*lines, ranges)
 
@@ -215,11 +204,32 @@ def value_words(value: Any) -> str:
     return str(value) if not isinstance(value, list) else f"{len(value)} entries"
 
 
+SHAPE_KEYS: Final = tuple(
+    f"house.{key}"
+    for key in (
+        "gutter_height", "pitch", "pitch_other", "rise", "gutter_width", "gutter_depth",
+        "ridge_width", "ridge_depth", "bar_spacing", "bar_width", "bar_depth",
+    )
+)  # fmt: skip
+"""Keys that go with the form: a reader needs the form in a sentence, their numbers in the table of inputs."""
+
+
 def difference_words(found: Sequence[tuple[str, Any, Any]], base: str) -> str:
     """Return how a candidate's house, crop, climate or heating differs from the first candidate's."""
-    parts = [
-        f"{KEY_WORDS.get(key, key.replace('.', ' ').replace('_', ' '))} {value_words(mine)} instead of "
-        f"{value_words(other)}"
-        for key, other, mine in found
-    ]
+    other_form = any(key == "house.form" for key, _, _ in found)
+    shape = [key for key, _, _ in found if key in SHAPE_KEYS]
+    parts = []
+    for key, theirs, mine in found:
+        if other_form and key in shape:
+            continue
+        name = KEY_WORDS.get(key, key.replace(".", " ").replace("_", " "))
+        parts.append(f"{name} {value_words(mine)} instead of {value_words(theirs)}")
+    if other_form and shape:
+        parts.append("gutters, ridges and bars of its own (see inputs)")
     return f"{listed(parts)} (against {base})"
+
+
+def count(number_of: float, one: str, many: str) -> str:
+    """Return "1 hour" or "12 hours"."""
+    text = number(number_of)
+    return f"{text} {one if text == '1' else many}"

@@ -112,6 +112,10 @@ def test_who_is_beaten_on_all_counts() -> None:
 
 def test_house_differences_are_said_with_both_values(run: Run) -> None:
     found = house_differences(run, 1)
+    arch = [("house.form", "gable", "arch"), ("house.bar_width", 0.03, 0.06), ("house.rise", None, 1.9)]
+    assert say.difference_words(arch, "glass") == (
+        "form arch instead of gable and gutters, ridges and bars of its own (see inputs) (against glass)"
+    )
     assert [key for key, _, _ in found] == ["house.ridge_azimuth", "house.leakage_per_hour"]
     words = say.difference_words(found, "single glass")
     assert "direction of the ridge 90 instead of 0" in words
