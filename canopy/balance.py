@@ -14,7 +14,7 @@ from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatindex import order_index
 from canopy.heatmodel import Model, build_model
 from canopy.heatout import result
-from canopy.heatregime import evaluate
+from canopy.heatregime import PAST_KINK, evaluate, vent_reach
 from canopy.heatretry import alone
 from canopy.heatrows import FILM, HISTORY, SPEED, Context, State, past, soil_line
 from canopy.longwave import band_emission
@@ -30,12 +30,11 @@ OPEN_W_M2: Final = 1e-3  # what sends an hour to the other route
 TURNS: Final = 12  # of Newton passes and other route
 FIRST_PASSES: Final = 12
 LATER_PASSES: Final = 5
-APART: Final = 2  # first passes, each hour by itself: far from the answer the past only spreads the error
+APART: Final = 3  # first passes, each hour by itself: far from the answer the past only spreads the error
 GREY_C: Final = 10.0  # temperature at which grey means are weighted
 LARGEST_STEP_K: Final = 8.0
 LARGEST_STEP_PA: Final = 800.0
 SATURATED: Final = 1.004  # a step goes no further beyond saturation; fog keeps the air below
-PAST_KINK: Final = 0.004  # opening beyond shut and full that a step may reach: the regime row turns it back
 
 
 GREY: Final = BandSet(("all",), (3.0, 100.0))
@@ -196,7 +195,8 @@ def _response(model: Model, c: Context, x: list[list[Entry]], film: list[Floats]
 def newton_step(model: Model, state: State, c: Context, apart: bool = False) -> None:
     """One Newton step of the whole record, marched in time (unless `apart`), limited, applied."""
     ix, n = model.index, c.n
-    x = eliminate([row[:n] for row in c.system.slope], _right_sides(model, c), model.hours)
+    reach = vent_reach(model, state.unknown[ix.vent])
+    x = eliminate([row[:n] for row in c.system.slope], _right_sides(model, c), reach, model.hours)
     response = _response(model, c, x, _film_line(model, state, c, x))
     if apart:
         carried, drive = response.own[:-1], response.drive_floor * response.own[-1]

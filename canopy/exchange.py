@@ -20,8 +20,8 @@ Floats = NDArray[np.float64]
 
 SMALL_K: Final = 0.05  # K, rounds the cusp of |dT| at zero; changes a flux by less than 1e-3 W/m2
 STILL_AIR_M_S: Final = 0.10  # air speed among the crop of a closed, heated house (Stanghellini 1987)
-VENT_CELL_M: Final = 8.0  # m, width of the house that one row of vents serves; common practice
-PLATE_M: Final = 4.0  # m, run of the air along a roof pane or film; common practice
+VENT_CELL_M: Final = 16.0  # m of floor that air crosses from inlet to outlet; two spans, common practice
+PLATE_M: Final = 1.0  # m, run of the air between bars, hoops, beds; common practice
 LEAF_WIDTH_M: Final = 0.05  # m, characteristic leaf size (Stanghellini 1987, tomato leaflets)
 VENT_HEIGHT_M: Final = 1.0  # m, vertical height of an open vent; common practice
 VENT_DISCHARGE: Final = 0.644  # Boulard & Baille (1995), Agric. For. Meteorol. 73:133
@@ -31,6 +31,7 @@ LEAK_WIND: Final = 0.000174  # (L/s)2 cm-4 (m/s)-2, same model, shelter class 3
 LEAK_REF_WIND_M_S: Final = 4.0  # a house's leakage is stated at this wind
 LEAK_REF_K: Final = 20.0  # and this temperature difference
 STOWED_MIX_M_S: Final = 0.05  # exchange of two spaces through open area beside buoyancy; common practice
+SLIT: Final = 0.01  # open share added under the root of the buoyant exchange
 MIXED_K: Final = 0.3  # rounds |dT| in flows between spaces
 AIR_CONDUCTIVITY: Final = 0.026  # W m-1 K-1, air near 290 K
 AIR_VISCOSITY_M2_S: Final = 1.5e-5  # kinematic, air near 290 K
@@ -145,25 +146,24 @@ def vent_flow(
 
 
 def screen_flow(
-    drawn: Floats, permeability: float, diff: Floats, mean_k: Floats
+    fabric: Floats, open_part: Floats, permeability: float, diff: Floats, mean_k: Floats
 ) -> tuple[Floats, Floats, Floats]:
     """Air between the spaces below and above a screen, m3 s-1 per m2 floor.
 
-    Through the drawn fabric K |dT|^(2/3) (Balemans 1989; Miguel 1998); through the open part
-    a = 1 - drawn the buoyant exchange a (0.5 a g |dT| / T)^0.5 (Miguel 1998) and a little mixing.
-    Returns flow, slope with dT, slope with `drawn`.
+    Through the drawn fabric K |dT|^(2/3) (Balemans 1989; Miguel 1998), `fabric` its share of the floor;
+    through the open part a the buoyant exchange a (0.5 a g |dT| / T)^0.5 (Miguel 1998), with a slit's width
+    added under the root so that the first opening counts, and a little mixing. Returns flow, slope with dT,
+    slope with `open_part`.
     """
     size = np.sqrt(diff * diff + MIXED_K**2)
-    unit = permeability / 3600.0
-    fabric = unit * np.cbrt(size) ** 2
-    open_part = np.maximum(1.0 - drawn, 0.0)
+    through = fabric * (permeability / 3600.0) * np.cbrt(size) ** 2
     root = np.sqrt(0.5 * GRAVITY * size / mean_k)
-    open_root = np.sqrt(open_part)
-    buoyant = open_part * open_root * root
-    flow = drawn * fabric + buoyant + STOWED_MIX_M_S * open_part**2
-    by_diff = (drawn * fabric * (2 / 3) + 0.5 * buoyant) * diff / (size * size)
-    by_drawn = fabric - 1.5 * open_root * root - 2.0 * STOWED_MIX_M_S * open_part
-    return flow, by_diff, by_drawn
+    width = np.sqrt(open_part + SLIT)
+    buoyant = open_part * width * root
+    flow = through + buoyant + STOWED_MIX_M_S * open_part**2
+    by_diff = (through * (2 / 3) + 0.5 * buoyant) * diff / (size * size)
+    by_open = root * (width + 0.5 * open_part / width) + 2.0 * STOWED_MIX_M_S * open_part
+    return flow, by_diff, by_open
 
 
 def air_speed_sq(flow: Floats, height_m: float) -> tuple[Floats, Floats]:

@@ -45,6 +45,7 @@ PIPE_WEIGHT: Final = 3.0  # W/m2 per K of pipe temperature
 VENT_WEIGHT: Final = 10.0  # K per unit of opening
 VAPOUR_WEIGHT: Final = 0.01  # K per Pa above the humidity limit
 HUMID_VENT_MAX: Final = 0.3  # vents open no further than this for humidity; common practice
+PAST_KINK: Final = 0.004  # opening beyond a kink that a step may reach: the row then shows its other side
 OUTSIDE_REACH: Final = 1.05  # venting for humidity aims no lower than this share of the outside vapour
 GIVE_WAY_K: Final = 0.5  # humidity venting gives way when the heating cannot hold the air this near
 
@@ -195,6 +196,7 @@ def vent_row(c: Context) -> None:
     opening, air, vapour = c.u[ix.vent], c.u[ix.house_air], c.u[ix.air0_vapour]
     most = m.gap_max + m.vent_max
     cool = m.vent_at - air
+    cool = np.where((cool > 0.0) & (c.u[ix.air(ix.screens)] < m.temp_out), np.inf, cool)  # opening would warm
     target = m.humidity_max * c.saturation[ix.house_air][0]
     reach = OUTSIDE_REACH * m.vapour_out
     dry = VAPOUR_WEIGHT * (np.maximum(target, reach) - vapour)
@@ -220,3 +222,18 @@ def vent_row(c: Context) -> None:
     system.add_slope(row, ix.house_air, by_air + np.where(by_dry, rise, 0.0))
     system.add_slope(row, ix.air0_vapour, np.where(by_dry, -VAPOUR_WEIGHT, 0.0))
     c.humid = by_dry | by_stop | by_give
+
+
+def vent_reach(model: Model, opening: Floats) -> tuple[Floats, Floats]:
+    """How far the opening may move in one step: just past the next kink of its row, down and up.
+
+    Kinks are shut, the end of the screen gap, the limit for humidity and fully open. Stopping there, before
+    the other unknowns are solved, keeps a step from settling them for a regime that does not hold.
+    """
+    most = model.gap_max + model.vent_max
+    humid = np.where(model.humidity_max < 1.0, np.minimum(model.gap_max + HUMID_VENT_MAX, most), most)
+    low, high = np.full(model.hours, -PAST_KINK), most + PAST_KINK
+    for kink in (0.0 * most, model.gap_max, humid, most):
+        low = np.where(opening > kink + 1.01 * PAST_KINK, np.maximum(low, kink - PAST_KINK), low)
+        high = np.where(opening < kink - 1.01 * PAST_KINK, np.minimum(high, kink + PAST_KINK), high)
+    return low - opening, high - opening

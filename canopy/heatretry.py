@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 
 from canopy import vapour as vp
 from canopy.heatmodel import Model
-from canopy.heatregime import evaluate
+from canopy.heatregime import PAST_KINK, evaluate, vent_reach
 from canopy.heatrows import Context, Past
 from canopy.newton import Entry, eliminate
 
@@ -22,31 +22,35 @@ Bools = NDArray[np.bool_]
 
 TRIES: Final = 30
 HALVINGS: Final = 9
-STARTS: Final = (0.0, 0.03, 0.3, 1.0)  # openings to start from
+STARTS: Final = ((0.0, -3.0), (0.03, 0.0), (0.3, -3.0), (1.0, -3.0), (1.0, 3.0), (0.0, 3.0))
+"""Openings to start from, and covering less air temperature, K."""
+STALLED: Final = 6  # tries without a better value in any hour that end a descent
 
 
 def alone(model: Model, unknown: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Bools]:
     """Solve hours by themselves, their past held; returns the unknowns and where they are closed."""
     best, done = _descend(model, [u.copy() for u in unknown], gone, closed)
-    for start in STARTS:
+    for opening, cover in STARTS:
         if done.all():
             break
         at = np.flatnonzero(~done)
         part, before = model.take(at), gone.take(at)
-        trial, ok = _descend(part, _fresh(part, before, start), before, closed)
+        trial, ok = _descend(part, _fresh(part, before, opening, cover), before, closed)
         for k in range(len(best)):
             best[k][at[ok]] = trial[k][ok]
         done[at[ok]] = True
     return best, done
 
 
-def _fresh(model: Model, gone: Past, opening: float) -> list[Floats]:
-    """A start near the hour before, with a given opening."""
+def _fresh(model: Model, gone: Past, opening: float, cover: float) -> list[Floats]:
+    """A start near the hour before, with a given opening and covering less air temperature."""
     ix = model.index
     u = [np.zeros(model.hours) for _ in range(ix.size)]
     for k, value in gone.before.items():
         u[k] = value.copy()
     u[ix.floor] = u[ix.house_air].copy()
+    for layer in range(ix.layers):
+        u[ix.cover(layer)] = u[ix.house_air] + cover
     for space in range(1, ix.screens + 1):
         u[ix.air(space)] = 0.5 * (u[ix.house_air] + model.temp_out)
         u[ix.vapour(space)] = 0.8 * vp.saturation(u[ix.air(space)])[0]
@@ -65,11 +69,13 @@ def _descend(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[
     vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
     context = evaluate(model, u, gone)
     error = opened(context)
+    best, stall = error, 0
     for _ in range(TRIES):
-        if float(error.max()) < closed:
+        if float(error.max()) < closed or stall > STALLED:
             break
         sides: list[list[Entry]] = [[r.copy()] for r in context.system.residual]
-        x = eliminate([row[: ix.size] for row in context.system.slope], sides, model.hours)
+        reach = vent_reach(model, u[ix.vent])
+        x = eliminate([row[: ix.size] for row in context.system.slope], sides, reach, model.hours)
         steps = [np.zeros(model.hours) if row[0] is None else row[0] for row in x]
         size = np.ones(model.hours)
         for k in range(ix.size):
@@ -85,6 +91,8 @@ def _descend(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[
                 break
             share = np.where(worse, 0.4 * share, share)
         u, context, error = trial, found, after
+        stall = 0 if bool(((error < 0.5 * best) & (best >= closed)).any()) else stall + 1
+        best = np.minimum(best, error)
     return u, error < closed
 
 
@@ -92,5 +100,5 @@ def _held(model: Model, k: int, value: Floats, vapours: set[int]) -> Floats:
     """Keep an unknown where the formulas mean something."""
     ix = model.index
     if k == ix.vent:
-        return np.clip(value, -0.004, model.gap_max + model.vent_max + 0.004)
+        return np.clip(value, -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
     return np.clip(value, 1.0, 9000.0) if k in vapours else np.clip(value, -80.0, 110.0)

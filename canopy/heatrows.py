@@ -204,11 +204,13 @@ def screens(c: Context) -> None:
             coefficients.append((h, slope))
         _dew(c, node, low, high, drawn, by_vent, coefficients, screen.vapour_open)
         diff = c.u[ix.air(low)] - c.u[ix.air(high)]
-        flow, by_diff, by_drawn = ex.screen_flow(drawn, screen.air_permeability, diff, m.mean_k)
+        flow, by_diff, by_open = ex.screen_flow(
+            m.drawn[number], 1.0 - drawn, screen.air_permeability, diff, m.mean_k
+        )
         slopes = [
             (ix.air(low), m.density * by_diff),
             (ix.air(high), -m.density * by_diff),
-            (ix.vent, m.density * by_drawn * by_vent),
+            (ix.vent, -m.density * by_open * by_vent),
         ]
         c.air_flow(m.density * flow, slopes, low, high)
 

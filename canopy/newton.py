@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 Entry = NDArray[np.float64] | None
+Reach = tuple[Floats, Floats]
 Slopes = Iterable[tuple[int, Floats]]
 
 REGIME_ROWS: Final = 3
@@ -106,13 +107,17 @@ def _subtract(row: list[Entry], pivot_row: list[Entry], live: list[int], factor:
             entry -= tmp
 
 
-def _cramer(a: list[list[Entry]], b: list[list[Entry]], n: int, hours: int) -> None:
-    """Solve the last three rows for every right-hand side, in place in b."""
+def _cramer(a: list[list[Entry]], b: list[list[Entry]], reach: Reach, hours: int) -> None:
+    """Solve the last three rows for every right-hand side, in place in b.
+
+    Where the first right-hand side moves the last unknown out of `reach`, that unknown takes its limit and
+    the two rows before it are solved for the rest.
+    """
+    n = len(a)
     zero = np.zeros(hours)
 
     def at(i: int, j: int) -> Floats:
-        entry = a[n - 3 + i][n - 3 + j]
-        return zero if entry is None else entry
+        return _or(a[n - 3 + i][n - 3 + j], zero)
 
     p, q, r, s, t, u, v, w, x = (at(i, j) for i in range(3) for j in range(3))
     cofactor = [
@@ -121,27 +126,43 @@ def _cramer(a: list[list[Entry]], b: list[list[Entry]], n: int, hours: int) -> N
         [s * w - t * v, q * v - p * w, p * t - q * s],
     ]
     inverse = 1.0 / (p * cofactor[0][0] + q * cofactor[1][0] + r * cofactor[2][0])
-    for row in cofactor:
-        for j in range(3):
-            row[j] = row[j] * inverse
+    moved = sum((c * e for c, e in _pairs(cofactor[2], b, 0)), zero) * inverse
+    held = np.clip(moved, reach[0], reach[1])
+    stopped = ~(held == moved)
+    some = bool(stopped.any())
+    small = 1.0 / (p * t - q * s) if some else zero
     for column in range(len(b[0])):
-        old = [b[i][column] for i in range(n - 3, n)]
-        if all(entry is None for entry in old):
+        if all(b[i][column] is None for i in range(n - 3, n)):
             continue
+        fresh = [sum((c * e for c, e in _pairs(row, b, column)), zero) * inverse for row in cofactor]
+        if some:
+            last = held if column == 0 else zero
+            top, mid = (_or(b[n - 3 + k][column], zero) - c * last for k, c in ((0, r), (1, u)))
+            other = [(t * top - q * mid) * small, (p * mid - s * top) * small, last]
+            fresh = [np.where(stopped, one, two) for one, two in zip(other, fresh, strict=True)]
         for k in range(3):
-            terms = [cofactor[k][j] * entry for j, entry in enumerate(old) if entry is not None]
-            total = terms[0]
-            for term in terms[1:]:
-                total += term
-            b[n - 3 + k][column] = total
+            b[n - 3 + k][column] = fresh[k]
 
 
-def eliminate(a: list[list[Entry]], b: list[list[Entry]], hours: int) -> list[list[Entry]]:
-    """Solve A x = b for every column of b; both are overwritten. Returns b, now holding the solutions."""
+def _or(entry: Entry, zero: Floats) -> Floats:
+    return zero if entry is None else entry
+
+
+def _pairs(row: list[Floats], b: list[list[Entry]], column: int) -> list[tuple[Floats, Floats]]:
+    """Coefficients with the right-hand entries of the last three rows that are not zero."""
+    entries = [line[column] for line in b[-3:]]
+    return [(c, e) for c, e in zip(row, entries, strict=True) if e is not None]
+
+
+def eliminate(a: list[list[Entry]], b: list[list[Entry]], reach: Reach, hours: int) -> list[list[Entry]]:
+    """Solve A x = b for every column of b; both are overwritten. Returns b, now holding the solutions.
+
+    `reach`: lowest and highest move of the last unknown (the opening) in the first column.
+    """
     n = len(a)
     tmp = np.empty(hours)
     _reduce(a, b, n, tmp)
-    _cramer(a, b, n, hours)
+    _cramer(a, b, reach, hours)
     for k in range(n - REGIME_ROWS - 1, -1, -1):
         row = b[k]
         for j in range(k + 1, n):
