@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from typing import Any, Final
 
@@ -16,6 +17,7 @@ TEXT_LIMIT: Final = 32_000  # Excel takes 32767 characters in a cell
 TOTALS_ROW: Final = 4  # row (from 0) of the season's formulas on a daily sheet
 FIRST_ROW: Final = 5  # first day on a daily sheet
 AREA_ROW: Final = 3  # row (from 0) of the floor area on the sizing sheet
+LINE_POINTS: Final = 15.0  # height of one line
 COLOURS: Final = ("#1f5f8b", "#c8553d", "#588157", "#8a5a9e", "#b8860b", "#3a7d7c", "#7a4e2d", "#5c5c5c")
 
 
@@ -34,6 +36,7 @@ class Book:
         self.wrap = book.add_format({"text_wrap": True, "valign": "top"})
         self.plain = book.add_format({"valign": "top"})
         self.bold = book.add_format({"bold": True})
+        self.head_left = book.add_format({"bold": True, "valign": "top"})
         self.day = book.add_format({"num_format": "yyyy-mm-dd", "align": "left"})
         self._numbers: dict[tuple[str, bool], Any] = {}
 
@@ -80,6 +83,13 @@ class Book:
         for at, (head, unit) in enumerate(zip(heads, units, strict=True)):
             self.text(sheet, row, col + at, head, self.head)
             self.text(sheet, row + 1, col + at, self.shown(unit).text, self.unit)
+
+
+def fit_row(sheet: Any, row: int, *cells: tuple[str, float]) -> None:
+    """Make a row high enough for wrapped texts, each given with its column's width in characters."""
+    lines = max(math.ceil(0.9 * len(words) / width) for words, width in cells)
+    if lines > 1:
+        sheet.set_row(row, LINE_POINTS * lines)
 
 
 def cell(row: int, col: int, fixed: bool = False) -> str:

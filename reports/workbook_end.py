@@ -9,8 +9,10 @@ from canopy.columns import GAINS, LOSSES, STORES
 from canopy.fuel import fuels
 from reports.method import METHOD
 from reports.sentences import value_words
-from reports.workbook_base import Book, day_sheet
+from reports.workbook_base import Book, day_sheet, fit_row
 
+WIDE = 110
+SOURCE_WIDTHS = (18, 34, 24, 100)
 TABLES = ("house", "crop", "climate", "heating")
 
 
@@ -19,7 +21,7 @@ def readme_sheet(book: Book) -> None:
     run, sheet = book.run, book.sheet("Read me")
     weather, site = run.weather, run.weather.site
     sheet.set_column(0, 0, 24)
-    sheet.set_column(1, 1, 110)
+    sheet.set_column(1, 1, WIDE)
     book.text(sheet, 0, 0, run.study.keys.title, book.title)
     units = "US customary units; the CSV and Parquet files stay SI" if book.system == "us" else "SI units"
     day_names = ", ".join(f"{day_sheet(at)} = {one.plan.name}" for at, one in enumerate(run.candidates))
@@ -34,7 +36,7 @@ def readme_sheet(book: Book) -> None:
         ("Daily sheets", day_names),
         ("Formulas", "seasons, months and comparison are formulas over the daily sheets"),
         ("Balance of a day", f"{identity}, all in kWh per m2 of floor"),
-        ("Long columns", "an empty cell means that there is no such value"),
+        ("Empty cells", "an empty cell means that there is no such value"),
     ]
     if weather.typical:
         lines.append(("Typical year", "months of different years put together: its extremes are removed"))
@@ -42,13 +44,15 @@ def readme_sheet(book: Book) -> None:
         lines.append(("Clear sky", "a computed clear-sky year: an upper bound for light, no cloud at all"))
     row = 2
     for head, words in lines:
-        book.text(sheet, row, 0, head, book.bold)
+        book.text(sheet, row, 0, head, book.head_left)
         book.text(sheet, row, 1, words, book.wrap)
+        fit_row(sheet, row, (words, WIDE))
         row += 1
     for head, some in (("Notes", _notes(book)), ("Cautions", CAUTIONS)):
         for at, words in enumerate(some):
-            book.text(sheet, row, 0, head if at == 0 else "", book.bold)
+            book.text(sheet, row, 0, head if at == 0 else "", book.head_left)
             book.text(sheet, row, 1, words, book.wrap)
+            fit_row(sheet, row, (words, WIDE))
             row += 1
     sheet.freeze_panes(1, 0)
 
@@ -84,6 +88,7 @@ def inputs_sheet(book: Book) -> None:
         book.text(sheet, row, 0, key, book.bold)
         for col, value in enumerate(words, start=1):
             _value(book, sheet, row, col, value)
+        fit_row(sheet, row, *((value, 24) for value in words))
         row += 1
     book.text(sheet, row + 1, 0, "Study file", book.bold)
     for at, line in enumerate(run.study.text.splitlines()[:2000], start=row + 2):
@@ -106,19 +111,17 @@ def _value(book: Book, sheet: Any, row: int, col: int, value: str) -> None:
 
 def sources_sheet(book: Book) -> None:
     """Write where every figure comes from: optics, fuels, weather findings, method, versions."""
-    run, sheet = book.run, book.sheet("Sources")
-    sheet.set_column(0, 0, 18)
-    sheet.set_column(1, 1, 34)
-    sheet.set_column(2, 2, 20)
-    sheet.set_column(3, 3, 100)
+    sheet = book.sheet("Sources")
+    for col, width in enumerate(SOURCE_WIDTHS):
+        sheet.set_column(col, col, width)
     book.text(sheet, 0, 0, "Sources", book.title)
     for col, words in enumerate(("what", "name", "how known", "source")):
         book.text(sheet, 1, col, words, book.head)
     for row, cells in enumerate(_rows(book), start=2):
         for col, words in enumerate(cells):
             book.text(sheet, row, col, words, book.wrap)
+        fit_row(sheet, row, *zip(cells, SOURCE_WIDTHS, strict=True))
     sheet.freeze_panes(2, 0)
-    del run
 
 
 def _rows(book: Book) -> list[tuple[str, str, str, str]]:

@@ -34,7 +34,7 @@ def sizing_sheet(book: Book) -> None:
     book.text(sheet, 0, 0, "Size of the heating, m2 of floor", book.title)
     sheet.set_column(0, 0, 46)
     sheet.set_column(1, 1, 14)
-    sheet.set_column(2, 40, 16)
+    sheet.set_column(2, 40, 18)
     row = _sizes(book, sheet)
     for write in (_part_load, _coverage, _stores, energy_table, _degree_days, _years):
         row = write(book, sheet, row + 2)
@@ -78,7 +78,9 @@ def _sizes(book: Book, sheet: Any) -> int:
                 book.formula(sheet, at, col, text, shown_kw, how.number_format, bold=True)
             else:
                 book.put(sheet, at, col, float(value), unit)
-        book.text(sheet, last + 1, col, found.basis)
+        book.text(sheet, last + 1, col, found.basis, book.wrap)
+    sheet.set_row(last + 1, 30)
+    sheet.set_row(2, 30)
     last += 1
     for words, unit, pick in (
         ("proposed boiler run through the record: hours short", "h", lambda f: f.deficit_h),
