@@ -1,4 +1,4 @@
-"""The sizing sheet: sizes side by side, part load, smaller boilers, heat stores, degree days, years."""
+"""The sizing sheet: sizes side by side, design nights, part load, boilers, stores, degree days, years."""
 
 from __future__ import annotations
 
@@ -36,15 +36,15 @@ def sizing_sheet(book: Book) -> None:
     sheet.set_column(1, 1, 14)
     sheet.set_column(2, 40, 18)
     row = _sizes(book, sheet)
-    for write in (_part_load, _coverage, _stores, energy_table, _degree_days, _years):
-        row = write(book, sheet, row + 2)
-    row = _charts(book, sheet, row + 2)
     for at, one in enumerate(book.run.candidates):
         row = night_table(book, sheet, row + 2, at, one)
+    for write in (_part_load, _coverage, _stores, energy_table, _degree_days, _years):
+        row = write(book, sheet, row + 2)
     row += 2
-    book.text(sheet, row, 0, "Cautions", book.bold)
+    subtitle(book, sheet, row, "Cautions")
     for at, words in enumerate(CAUTIONS, start=1):
         book.text(sheet, row + at, 0, words)
+    _charts(book, sheet, row + len(CAUTIONS) + 3)
     sheet.freeze_panes(3, 2)
 
 
@@ -215,11 +215,11 @@ def _years(book: Book, sheet: Any, row: int) -> int:
     return end
 
 
-def _charts(book: Book, sheet: Any, row: int) -> int:
-    """Write the duration curves as numbers and draw them; returns the row below the chart."""
+def _charts(book: Book, sheet: Any, row: int) -> None:
+    """Write the duration curves as numbers and draw them beside the sizes."""
     columns = _columns(book)
     if not columns:
-        return row
+        return
     subtitle(book, sheet, row, "Load-duration curve: hours in which the load is at least ...")
     count = len(columns[0][2].curve.hours)
     row_head(book, sheet, row + 1, "hours, loads to the right", "W/m2")
@@ -246,4 +246,3 @@ def _charts(book: Book, sheet: Any, row: int) -> int:
     chart.set_legend({"position": "bottom"})
     side = 3 + len(book.run.candidates)
     sheet.insert_chart(3, max(side, 9), chart, {"x_scale": 1.4, "y_scale": 1.4})
-    return row + 2 + count
