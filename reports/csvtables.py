@@ -136,19 +136,31 @@ def _arrow_hourly(
         options = arrow_csv.WriteOptions(include_header=False, quoting_style="needed")
         arrow_csv.write_csv(table, file, options)
     if parquet_path is not None:
-        from pyarrow import parquet
+        _write_parquet(run, names, parquet_path)
 
-        exact = {
-            c.name: pa.array(np.concatenate([one.hourly[c.name] for one in run.candidates]), from_pandas=True)
-            for c in COLUMNS
-        }
-        stamps = np.tile(run.time - np.timedelta64(round(run.weather.utc_offset_h * 3600), "s"), len(names))
-        zone = pa.timestamp("s", tz=zone_offset(run.weather.utc_offset_h))
-        plain = pa.DictionaryArray.from_arrays(index, pa.array(list(names)))
-        whole = pa.table(
-            {"candidate": plain, "time": pa.array(stamps).cast(pa.timestamp("s")).cast(zone), **exact}
-        )
-        parquet.write_table(whole, parquet_path, compression="zstd")
+
+def _write_parquet(run: Run, names: Sequence[str], path: Path) -> None:
+    """Write the hours with every digit; time with the file's zone offset, names as they are typed."""
+    import pyarrow as pa
+    from pyarrow import parquet
+
+    exact = {
+        c.name: pa.array(np.concatenate([one.hourly[c.name] for one in run.candidates]), from_pandas=True)
+        for c in COLUMNS
+    }
+    offset_h = run.weather.utc_offset_h
+    stamps = np.tile(run.time - np.timedelta64(round(offset_h * 3600), "s"), len(names))
+    zone = pa.timestamp("s", tz=zone_offset(offset_h))
+    index = pa.array(np.repeat(np.arange(len(names), dtype=np.int32), len(run.time)))
+    who = pa.DictionaryArray.from_arrays(index, pa.array(list(names)))
+    table = pa.table({"candidate": who, "time": pa.array(stamps).cast(pa.timestamp("s")).cast(zone), **exact})
+    parquet.write_table(
+        table,
+        path,
+        compression="zstd",
+        use_dictionary=["candidate"],
+        use_byte_stream_split=[c.name for c in COLUMNS],
+    )
 
 
 def write_rows(path: Path, texts: Mapping[str, Sequence[str]], numbers: Mapping[str, Floats]) -> None:

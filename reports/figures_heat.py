@@ -141,8 +141,8 @@ def night_specs(run: Run, patterns: Sequence[NightPattern], show: Display) -> tu
                         "hovertemplate": f"{mark.name}<br>%{{x}} h: %{{y:,.1f}} {unit}<extra></extra>",
                     }
                 )
-        x = axis("clearest third of nights, hour", domain=[0.0, 0.485], type="category")
-        x2 = axis("cloudiest third, hour", domain=[0.515, 1.0], type="category", anchor="y")
+        x = axis("clearest third of nights, hour", domain=[0.0, 0.485], type="category", showgrid=False)
+        x2 = axis("cloudiest third, hour", domain=[0.515, 1.0], type="category", anchor="y", showgrid=False)
         specs.append(
             {
                 "data": traces,
