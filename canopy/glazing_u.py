@@ -7,6 +7,7 @@ Unny, Raithby & Konicek (1976), J. Heat Transfer 98:189 for slopes to 60 degrees
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
@@ -15,7 +16,7 @@ from numpy.typing import ArrayLike, NDArray
 from canopy.bands import THERMAL, BandSet
 from canopy.optics import Covering, Gap, ThermalOptics
 from canopy.planck import band_emission
-from weather.constants import GRAVITY, ZERO_C_K
+from weather.constants import GRAVITY
 
 Floats = NDArray[np.float64]
 Gas = Literal["air", "argon"]
@@ -25,20 +26,24 @@ EN_MEAN_K: Final = 283.0  # EN 673, 5.3: mean temperature of the gap
 EN_DELTA_K: Final = 15.0  # EN 673, 5.3: temperature difference over all gaps
 REFERENCE_EMISSIVITY: Final = 0.837  # EN 673, 5.2: bare soda-lime glass
 
-_TABLE_C: Final = np.array([-10.0, 0.0, 10.0, 20.0])
-_GASES: Final = {  # EN 673 table 1: conductivity W m-1 K-1, density kg m-3, viscosity Pa s, heat J kg-1 K-1
-    "air": (
-        np.array([0.02336, 0.02416, 0.02496, 0.02576]),
-        np.array([1.326, 1.277, 1.232, 1.189]),
-        np.array([1.661e-5, 1.711e-5, 1.761e-5, 1.811e-5]),
-        1008.0,
-    ),
-    "argon": (
-        np.array([0.01584, 0.01634, 0.01684, 0.01734]),
-        np.array([1.829, 1.762, 1.699, 1.640]),
-        np.array([2.038e-5, 2.101e-5, 2.164e-5, 2.228e-5]),
-        519.0,
-    ),
+_REFERENCE_K: Final = 283.15
+
+
+@dataclass(frozen=True)
+class _Gas:
+    """EN 673 table 1 at 10 degC and per kelvin."""
+
+    conductivity: float  # W m-1 K-1
+    conductivity_per_k: float
+    viscosity: float  # Pa s
+    viscosity_per_k: float
+    density: float  # kg m-3, goes with 1/T
+    heat: float  # J kg-1 K-1
+
+
+_GASES: Final = {
+    "air": _Gas(0.02496, 8.0e-5, 1.761e-5, 5.0e-8, 1.232, 1008.0),
+    "argon": _Gas(0.01684, 5.0e-5, 2.164e-5, 6.33e-8, 1.699, 519.0),
 }
 _EN_SLOPES: Final = np.array([0.0, 45.0, 90.0])
 _EN_FACTOR: Final = np.array([0.16, 0.10, 0.035])  # EN 673, 5.3.1: Nu = A (Gr Pr)^n
@@ -47,20 +52,20 @@ _STEEP_DEG: Final = 60.0
 
 
 def gas_conductivity(mean_t_k: ArrayLike, gas: Gas = "air") -> Floats:
-    """Return conductivity of a still gas, W m-1 K-1 (EN 673 table 1, straight lines, beyond its ends too)."""
-    return _gas(np.asarray(mean_t_k, dtype=np.float64), gas)[0]
+    """Return conductivity of a still gas, W m-1 K-1 (EN 673 table 1: straight between -10 and 20 degC)."""
+    row = _GASES[gas]
+    warm = np.asarray(mean_t_k, dtype=np.float64) - _REFERENCE_K
+    return np.asarray(row.conductivity + row.conductivity_per_k * warm)
 
 
-def _gas(mean_t_k: Floats, gas: Gas) -> tuple[Floats, Floats]:
-    """Return conductivity and Rayleigh number per K and m3."""
-    k_row, rho_row, mu_row, heat = _GASES[gas]
-    at = np.clip((mean_t_k - ZERO_C_K - _TABLE_C[0]) / 10.0, -3.0, 7.0)
-    low = np.clip(np.floor(at), 0, 2).astype(np.intp)
-    part = at - low
-    k = k_row[low] + part * (k_row[low + 1] - k_row[low])
-    rho = rho_row[low] + part * (rho_row[low + 1] - rho_row[low])
-    mu = mu_row[low] + part * (mu_row[low + 1] - mu_row[low])
-    return np.asarray(k), np.asarray(GRAVITY * rho**2 * heat / (mean_t_k * mu * k))
+def _rayleigh(mean_t_k: Floats, gas: Gas) -> Floats:
+    """Return the Rayleigh number per K and m3; the table's straight lines serve -50 to 100 degC."""
+    row = _GASES[gas]
+    viscosity = row.viscosity + row.viscosity_per_k * (mean_t_k - _REFERENCE_K)
+    density = row.density * _REFERENCE_K / mean_t_k
+    return np.asarray(
+        GRAVITY * density**2 * row.heat / (mean_t_k * viscosity * gas_conductivity(mean_t_k, gas))
+    )
 
 
 def gap_convection(
@@ -92,8 +97,8 @@ def gap_convection_slope(
     Heat downwards: Nu = 1 + (Nu_upright - 1) sin(slope), Arnold et al. (1976) as used in ISO 15099.
     """
     d, t = np.broadcast_arrays(np.asarray(delta_t, dtype=np.float64), np.asarray(mean_t_k, dtype=np.float64))
-    k, per_k = _gas(np.asarray(t), gas)
-    scale = per_k * thickness_m**3
+    k = gas_conductivity(t, gas)
+    scale = _rayleigh(np.asarray(t), gas) * thickness_m**3
     ra = scale * np.abs(d)
     if method == "en673":
         up, slope_up = _power_law(
@@ -182,8 +187,9 @@ def u_value(
 ) -> float:
     """Return the U-value of a stack, W m-2 K-1 per m2 of covering, also of layers that pass long-wave.
 
-    he, hi are surface coefficients over bare glass (emissivity .837, EN 673 5.2); their convective part is what is left after radiation at 283 K. Both sides are black at the air's temperature. Each gap takes the
-    same share of EN 673's 15 K.
+    he, hi are surface coefficients over bare glass (emissivity .837, EN 673 5.2); their convective part is
+    what radiation at 283 K leaves. Both sides are black at the air's temperature. Each gap takes the same
+    share of EN 673's 15 K.
     """
     count = len(resistance)
     size = 2 * count + 2

@@ -63,12 +63,12 @@ class MaterialSheet:
         return _uv_factor(self.constants, self.thickness_m, self.uv_transmit)
 
 
-_UV_CACHE: dict[tuple[str, float, float], float] = {}
+_UV_CACHE: dict[tuple[str, float, float, float, float], float] = {}
 
 
 def _uv_factor(constants: Material, thickness_m: float, target: float) -> float:
     """Return f so that the UV band's normal transmittance with every crossing times f is the target."""
-    key = (constants.name, thickness_m, target)
+    key = (constants.name, float(constants.n.sum()), float(constants.k.sum()), thickness_m, target)
     if key not in _UV_CACHE:
         w, power = reference_sunlight()
         use = (w >= 0.28) & (w < UV_TO_UM)

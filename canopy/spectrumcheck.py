@@ -53,7 +53,7 @@ def check_spectrum(
     for key, values in {"wavelength": w, **given}.items():
         if values.shape != w.shape:
             raise UserError(f"{where}: {values.size} values of {key} for {w.size} wavelengths")
-        _refuse(where, ~np.isfinite(values), first_row, w, f"{key} is not a number")
+        _refuse(where, ~np.isfinite(values), first_row, values, f"{key} is not a number")
     _check_wavelengths(where, w, needed_um, first_row)
     notes: list[str] = []
     for key, values in given.items():

@@ -76,11 +76,9 @@ def glass(page: str, name: str, title: str) -> Table:
         name,
         title,
         plain(e.references) + "; far infrared: page Rubin-IR of the same paper",
-        "below .31 um k goes on with the slope of its logarithm between .31 and .32 um (sheets of 3 "
-        "mm and more pass "
-        "less than .2 there; hardly any sunlight: UV share of hemispherical transmission off by at "
-        "most .02); "
-        "4.6-5 um straight line between the two tables (dark in both: no effect above .001)",
+        "below .31 um k goes on with the slope of its logarithm between .31 and .32 um (k five times "
+        "higher or lower there moves the UV band of 3-4 mm by .001); 4.6-5 um straight line between the two "
+        "tables (dark in both: no effect above .001)",
         np.concatenate([uv, w, wi]),
         np.concatenate([cauchy(e.n, uv), cauchy(e.n, w), ni]),
         np.concatenate([k_uv, k, ki]),
@@ -105,11 +103,10 @@ def polymer(book: str, page: str, name: str, title: str, uv_words: str) -> Table
         name,
         title,
         plain(e.references),
-        f"below .40 um: {uv_words}; n goes on with the 1/lambda^2 law of .4-1 um. Beyond 20 um: n and "
-        f"k held at "
-        f"their 15-20 um means ({np.mean(n[far]):.3f}, {k_far:.3f}); sheets from .4 mm on are dark to "
-        f"40 um with any k "
-        "above .005, so the 14-100 um band is off by at most .03 there; for films of .1-.2 mm by up to .15",
+        f"below .40 um: {uv_words}; n goes on with the 1/lambda^2 law of .4-1 um. Beyond 20 um: n and k "
+        f"held at their 15-20 um means ({np.mean(n[far]):.3f}, {k_far:.3f}); k halved or doubled there moves "
+        "the transmittance of the 14-100 um band by at most .03 for sheets of .45 mm and more, by .11 for "
+        "films of .1-.15 mm",
         np.concatenate([uv, w, wf]),
         np.concatenate([n_uv, n, np.full(wf.size, float(np.mean(n[far])))]),
         np.concatenate([k_uv, k, np.full(wf.size, k_far)]),
@@ -148,6 +145,7 @@ def polyethylene() -> Table:
     )
     w_all = np.concatenate([wv, w, wg, ws])
     k_all = np.concatenate([np.zeros(wv.size), k, level + lines, ks])
+    w_all, first = np.unique(np.round(w_all, 6), return_index=True)
     return Table(
         "polyethylene",
         "polyethylene (linear low density)",
@@ -160,13 +158,12 @@ def polyethylene() -> Table:
         "HDPE, with the CH2 "
         "rocking doublet at 720 and 730 cm-1 (half width 5 cm-1, peak k .030 each: from memory, "
         "order of magnitude). "
-        "The 2-12.3 um data come from a .27 um film that cannot see k below about .001: for films of "
-        "150-200 um "
-        "the 8-14 um band can be off by .10 and the other thermal bands by .08; UV without "
-        "stabiliser is an upper bound",
+        "The 2-12.3 um data come from a .27 um film that cannot see k below about .001: with k .001 higher "
+        "throughout, films of 150-180 um pass .10 less in 3-8 and 8-14 um; k of 12.3-40 um halved or doubled "
+        "moves 14-100 um by .05 and 8-14 um by .025; UV without stabiliser is an upper bound",
         w_all,
-        n_all,
-        np.maximum(k_all, base * w_all),
+        n_all[first],
+        np.maximum(k_all[first], base * w_all),
     )
 
 
@@ -209,8 +206,7 @@ def tables() -> list[Table]:
             "polycarbonate",
             "polycarbonate",
             "k goes on with the slope of its logarithm at .40-.43 um (edge of absorption; UV band "
-            "off by up to .15, "
-            "less with a UV-blocking skin)",
+            "off by up to .12, less with a UV-blocking skin)",
         ),
         polymer(
             "polyethylene_terephthalate",
@@ -219,7 +215,7 @@ def tables() -> list[Table]:
             "poly(ethylene terephthalate)",
             "k goes on with the slope of its logarithm at .40-.43 um (edge of absorption at .32 um "
             "not resolved; UV band "
-            "off by up to .3)",
+            "off by up to .07 from k, more where grades differ)",
         ),
         polyethylene(),
         water(),

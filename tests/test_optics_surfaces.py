@@ -1,0 +1,69 @@
+"""Dirt, wash days, age: how much light is left, and that nothing is lost on the way."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from canopy.layers import build_solar
+from canopy.sheets import MaterialSheet
+from canopy.surfaces import Dirt, age_factor, clouded, day_of_year, dimmed
+
+HAZY = build_solar([MaterialSheet("pmma", 0.003, haze=0.3), MaterialSheet("soda-lime-clear", 0.004)])
+MONTHS = (0.08, 0.08, 0.07, 0.05, 0.04, 0.03, 0.03, 0.03, 0.04, 0.05, 0.06, 0.07)
+
+
+def test_dirt_by_month_and_wash() -> None:
+    """Mid-month levels are met; a wash takes nine tenths off, and 30 days later the level is back."""
+    loss = Dirt(MONTHS).daily_loss()
+    assert loss[[15, 196]] == pytest.approx([0.08, 0.03], abs=1e-3)
+    washed = Dirt(MONTHS, wash_days=(250,)).daily_loss()
+    assert washed[250] == pytest.approx(0.1 * loss[250])
+    assert washed[280:] == pytest.approx(loss[280:])
+    assert washed[:250] == pytest.approx(loss[:250])
+
+
+@given(
+    st.lists(st.floats(0.0, 0.5), min_size=12, max_size=12),
+    st.lists(st.integers(0, 364), max_size=4),
+)
+def test_dirt_stays_between_nought_and_its_months(months: list[float], washes: list[int]) -> None:
+    loss = Dirt(tuple(months), tuple(washes)).daily_loss()
+    assert loss.shape == (365,)
+    assert loss.min() >= 0.0
+    assert loss.max() <= max(months) + 1e-12
+
+
+def test_factor_by_hour() -> None:
+    time = np.arange("2024-02-27", "2024-03-03", dtype="datetime64[h]").astype("datetime64[s]")
+    assert day_of_year(time)[::24].tolist() == [57, 58, 58, 59, 60]
+    assert Dirt(MONTHS).factor(time) == pytest.approx(1.0 - Dirt(MONTHS).daily_loss()[day_of_year(time)])
+    assert day_of_year(np.array(["1990-12-31"], dtype="datetime64[s]")).tolist() == [364]
+
+
+def test_age() -> None:
+    """Two per cent a year for ten years leave .817."""
+    assert age_factor(10.0, 0.02) == pytest.approx(0.98**10)
+    assert age_factor(0.0, 0.02) == 1.0
+
+
+@given(st.floats(0.0, 1.0), st.floats(0.0, 1.0))
+def test_dimmed_and_clouded_stay_whole(factor: float, share: float) -> None:
+    o = clouded(dimmed(HAZY, factor), share)
+    beam = o.beam_beam + o.beam_diffuse + o.beam_reflect + o.beam_absorbed.sum(axis=0)
+    assert beam == pytest.approx(np.ones_like(beam), abs=1e-12)
+    for passed, back, stays in (
+        (o.diffuse_in, o.reflect_outside, o.absorbed_from_outside),
+        (o.diffuse_out, o.reflect_inside, o.absorbed_from_inside),
+    ):
+        assert passed + back + stays.sum(axis=0) == pytest.approx(np.ones(5), abs=1e-12)
+    assert o.diffuse_in == pytest.approx(o.diffuse_out, abs=1e-12)
+    assert o.diffuse_in == pytest.approx(factor * HAZY.diffuse_in, abs=1e-12)
+    assert o.beam_beam == pytest.approx(factor * (1.0 - share) * HAZY.beam_beam, abs=1e-12)
+
+
+def test_bands_may_age_apart() -> None:
+    factor = np.array([0.5, 0.9, 0.95, 1.0, 1.0])
+    assert dimmed(HAZY, factor).diffuse_out == pytest.approx(factor * HAZY.diffuse_out)
