@@ -21,7 +21,7 @@ from canopy.materials import Material
 from canopy.optics import Covering
 from canopy.sheet import Floats, Passage
 from canopy.sheets import EquivalentSheet, MaterialSheet, SpectralLayer
-from canopy.slabinverse import Inverted, index_with, invert
+from canopy.slabinverse import Inverted, index_with, invert, with_dark_bands
 from weather.errors import UserError
 
 __all__ = ["LabCovering", "covering_from_spectrum", "read_lab_csv"]
@@ -32,6 +32,8 @@ SOLAR_FROM_UM: Final = 0.40  # what a file must cover at least
 SOLAR_TO_UM: Final = 0.70
 THERMAL_FROM_UM: Final = 5.0  # a file that reaches from here to 14 µm carries the long-wave side too
 THERMAL_TO_UM: Final = 14.0
+_PHASE_TO_UM: Final = 20.0  # reflectance must be known to here for the phase
+_HOLE: Final = 1.15  # widest step of wavelength, as a ratio, that counts as joined up
 _EDGE_UM: Final = 2.9  # between what the spectrum gives for sunlight and for long-wave
 _FILM_MM: Final = 0.5  # thinner is a film
 _GLASS_N: Final = 1.52
@@ -95,7 +97,10 @@ def covering_from_spectrum(
         assumed.append("thickness not given: 4 mm (moves heat capacity and resistance, hardly light)")
     front, back = _faces(lab, kind, assumed, limits)
     found = invert(lab.wavelength_um, thickness * 1000.0, lab.transmit, front, back)
-    _say_limits(lab, found, limits)
+    dark_known = back is None and _joined_up(lab.wavelength_um)
+    if dark_known:
+        found = with_dark_bands(found, lab.wavelength_um)
+    _say_limits(lab, found, dark_known, limits)
     share = _haze(lab, assumed) if haze is None else haze
     optics = _optics(lab, found, thickness, kind, share, assumed)
     covering = _record(path, name, thickness, kind, wet, optics, limits)
@@ -152,6 +157,13 @@ def _faces(
     return np.where(clear, mean, lab.front), np.where(clear, mean, lab.back)
 
 
+def _joined_up(wavelength: Floats) -> bool:
+    """Say whether the file runs from light to 20 µm without a wide hole."""
+    inside = wavelength[(wavelength > SOLAR_TO_UM) & (wavelength < _PHASE_TO_UM)]
+    reaches = float(wavelength[-1]) >= _PHASE_TO_UM
+    return reaches and bool((inside[1:] / inside[:-1] < _HOLE).all())
+
+
 def _spans(wavelength: Floats, where: NDArray[np.bool_]) -> list[str]:
     """Return the wavelength ranges (µm) where a mask holds; holes under 4 % are closed, specks left out."""
     spans: list[list[float]] = []
@@ -164,10 +176,15 @@ def _spans(wavelength: Floats, where: NDArray[np.bool_]) -> list[str]:
     return [f"{a:.3g}-{b:.3g}" for a, b, count in spans if count > 2]
 
 
-def _say_limits(lab: LabSpectrum, found: Inverted, limits: list[str]) -> None:
+def _say_limits(lab: LabSpectrum, found: Inverted, dark_known: bool, limits: list[str]) -> None:
     """Say where n and k cannot be had, and where the numbers cannot be a plane sheet."""
     dark = _spans(lab.wavelength_um, found.opaque)
-    if dark:
+    if dark and dark_known:
+        limits.append(
+            f"nothing comes through at {', '.join(dark)} µm: n and k there follow from the reflectance at "
+            "all wavelengths (Kramers-Kronig), to about .01 of long-wave emissivity"
+        )
+    elif dark:
         limits.append(
             f"nothing comes through at {', '.join(dark)} µm: k cannot be had there, n is the real index that "
             "gives the reflectance (exact for emissivity at normal, up to .03 off for slanted long-wave "

@@ -2,7 +2,8 @@
 
 A plane-parallel sheet thicker than the light is coherent, with all internal reflections: face reflectances
 r1, r2 and internal transmittance t are three unknowns for T, R front, R back. The thickness turns t into k,
-and r with k into n.
+and r with k into n. Where nothing comes through, the phase of the face's reflection follows from its
+reflectance at all other wavelengths (Kramers-Kronig), and n and k from both.
 """
 
 from __future__ import annotations
@@ -70,3 +71,38 @@ def invert(
         r1, r2, t = face_powers(transmit, front, back)
     k = -np.log(np.maximum(t, OPAQUE)) * wavelength_um / (4.0 * np.pi * thickness_um)
     return Inverted(index_with(r1, k), index_with(r2, k), k, t)
+
+
+def reflection_phase(wavelength_um: Floats, reflectance: Floats) -> Floats:
+    """Return the phase (W,), radians, of the amplitude that a face reflects at normal incidence.
+
+    phi(w0) = -1/pi * integral of ln|(w + w0)/(w - w0)| d ln|r|/dw dw over frequency w: the Kramers-Kronig
+    relation of reflectance after partial integration (Wooten 1972, Optical Properties of Solids, ch. 6 and
+    appendix G); ln|r| is taken as straight between points and level beyond the ends.
+    """
+    grid = np.geomspace(wavelength_um[0], wavelength_um[-1], min(1500, 2 * wavelength_um.size))
+    amplitude = np.sqrt(np.clip(np.interp(grid, wavelength_um, reflectance), 1e-6, _R_MAX))
+    frequency = 1.0 / grid[::-1]
+    slope = np.diff(np.log(amplitude[::-1])) / np.diff(frequency)
+    x, at = frequency[None, :], frequency[:, None]
+    apart = np.abs(x - at)
+    whole = (x + at) * np.log(x + at) - (x - at) * np.log(np.maximum(apart, 1e-300))
+    phase = -(np.diff(whole, axis=1) @ slope) / np.pi
+    return np.asarray(np.interp(wavelength_um, grid, phase[::-1]))
+
+
+def constants_from_phase(reflectance: Floats, phase: Floats) -> tuple[Floats, Floats]:
+    """Return n and k of a face with r = sqrt(R) exp(i phase) = (n - 1 + i k)/(n + 1 + i k)."""
+    root = np.sqrt(np.clip(reflectance, 0.0, _R_MAX))
+    below = 1.0 + root**2 - 2.0 * root * np.cos(phase)
+    return np.asarray((1.0 - root**2) / below), np.maximum(2.0 * root * np.sin(phase) / below, 0.0)
+
+
+def with_dark_bands(found: Inverted, wavelength_um: Floats) -> Inverted:
+    """Return the sheet with n and k where nothing comes through, from the reflectance of all wavelengths."""
+    n, k = found.index_front, found.k
+    face = ((n - 1.0) ** 2 + k**2) / ((n + 1.0) ** 2 + k**2)
+    dark_n, dark_k = constants_from_phase(face, reflection_phase(wavelength_um, face))
+    dark = found.opaque & (dark_k > k)
+    index = np.where(dark, dark_n, n)
+    return Inverted(index, index, np.where(dark, dark_k, k), found.crossing)

@@ -125,7 +125,7 @@ def test_plot_opens_without_a_console_error(tmp_path: Path) -> None:
 
 
 def test_spectrum_agrees_with_the_bands() -> None:
-    """PAR at normal incidence from the drawn spectrum is the record's, but for scattered light between films."""
+    """PAR straight through from the drawn spectrum is the record's, but for scattering between films."""
     for name in ("glass-clear-4", "film-double-pe-plain", "film-pe-infrared"):
         found = spectrum_of(name)
         inside = (found.wavelength_um > 0.4) & (found.wavelength_um < 0.7)
