@@ -168,11 +168,13 @@ def test_impossible_values_become_gaps(tmp_path: Path) -> None:
     data = frame()
     data.iloc[36, 0] = 5000.0
     data.iloc[40, 1] = 99.0
+    data.iloc[90, 1] += 25.0
     data.iloc[50, 3] = -999.0
     weather = load(write(data, tmp_path / "bad.csv"))
     assert "global radiation: 1 hours outside" in texts(weather, "limits")
     assert "air temperature: 1 hours outside" in texts(weather, "limits")
-    assert np.flatnonzero(weather.filled).tolist() == [36, 40, 50]
+    assert "1 single hours more than 12 K" in texts(weather, "spikes")
+    assert np.flatnonzero(weather.filled).tolist() == [36, 40, 50, 90]
 
 
 def test_faults_of_sense_are_said(tmp_path: Path) -> None:
@@ -185,6 +187,7 @@ def test_faults_of_sense_are_said(tmp_path: Path) -> None:
     weather = load(write(data, tmp_path / "sense.csv"), elevation=800.0)
     assert "4 hours; taken as saturated" in texts(weather, "dew-point")
     assert "reduced to sea level" in texts(weather, "pressure")
+    assert "disagree by" in texts(weather, "humidity-pair")
     # standard atmosphere at 800 m: 92.08 kPa (ASHRAE Fundamentals 2017, ch. 1 eq. 3)
     assert weather.pressure.mean() == pytest.approx(92.08e3, rel=2e-3)
     assert "air temperature stands still" in texts(weather, "frozen")

@@ -135,12 +135,16 @@ def _labelled(request: WeatherRequest, raw: RawWeather, place: Place) -> RawWeat
     if raw.format != "logger" or raw.step_s < 900.0:  # half a short step does not matter: end of the step
         return raw
     start = replace(raw, label="start")
-    off = [
-        abs(noon) if (noon := noon_offset_h(other, place.longitude, place.utc_offset_h)) is not None else 0.0
-        for other in (raw, start)
-    ]
+    late = [noon_offset_h(other, place.longitude, place.utc_offset_h) for other in (raw, start)]
+    choice = 0
+    if late[0] is not None and late[1] is not None:
+        for clock in (0.0, place.utc_offset_h):  # as declared, else written in UTC
+            off = [abs(noon + clock) for noon in late if noon is not None]
+            if min(off) <= 0.5:
+                choice = int(off[1] < off[0])
+                break
     text = "stamps taken as the {} of their step (no label declared; solar noon speaks for it)"
-    chosen, word = (start, "start") if off[1] < off[0] else (raw, "end")
+    chosen, word = (start, "start") if choice else (raw, "end")
     note = Finding("label", "note", text.format(word))
     return replace(chosen, findings=(*chosen.findings, note))
 

@@ -60,7 +60,7 @@ def read_epw(lines: list[str], where: str) -> RawWeather:
     rows, stamp = rows.keep(good), stamp[good]
     columns = {name: column(rows.numbers(str(k)), codes, factor) for name, k, codes, factor in FIELDS}
     _clean(columns)
-    comments = " ".join(lines[: first + 1])
+    comments = " ".join(line for line in lines[:first] if line.upper().startswith("COMMENTS"))
     offset = SUN_OFFSET.search(comments)
     years = stamp - np.timedelta64(round(step_s), "s")
     typical = joined_years(years) or _says_typical(head, comments, years.astype("datetime64[Y]"))

@@ -8,7 +8,7 @@ import numpy as np
 
 from weather.errors import UserError
 from weather.gaps import runs
-from weather.psychro import STANDARD_PRESSURE_PA, standard_pressure
+from weather.psychro import STANDARD_PRESSURE_PA, relative_humidity, saturation_pressure, standard_pressure
 from weather.radiation import SkySun
 from weather.raw import TITLES, RawWeather
 from weather.record import Bools, Finding, Floats, Site, Times
@@ -31,6 +31,8 @@ DEW_SLACK_K: Final = 0.5  # rounding of two instruments
 FROZEN_H: Final = {"temp_air": 36, "relative_humidity": 36, "wind_speed": 36, "temp_dew": 48}
 FROZEN_SUN_H: Final = 5
 LONGWAVE_OFF_W_M2: Final = 25.0  # a file's long-wave further off than this on the mean is suspect
+HUMIDITY_PCT: Final = 5.0
+SPIKE_K: Final = 12.0
 JOINT_K: Final = 8.0  # a step of temperature at a month joint worth saying
 
 
@@ -116,7 +118,7 @@ def plausibility(
 ) -> tuple[dict[str, Floats], list[Finding]]:
     """Dew point, pressure and wind sense, frozen sensors, month joints; pressure at sea level is reduced."""
     result = dict(columns)
-    findings = _dew(result) + _frozen(result, sky)
+    findings = _dew(result) + _humidity(result) + _frozen(result, sky) + _spikes(result)
     if typical and "temp_air" in result:
         findings += _joints(result["temp_air"], time)
     if "wind_speed" in result:
@@ -149,6 +151,38 @@ def _dew(columns: dict[str, Floats]) -> list[Finding]:
         return []
     text = f"dew point above air temperature in {count} hours; taken as saturated"
     return [Finding("dew-point", "corrected", text, count)]
+
+
+def _humidity(columns: dict[str, Floats]) -> list[Finding]:
+    """Compare the file's relative humidity with the one its dew point gives."""
+    if not all(name in columns for name in ("temp_air", "temp_dew", "relative_humidity")):
+        return []
+    temp, dew = columns["temp_air"], columns["temp_dew"]
+    both = np.isfinite(temp) & np.isfinite(dew) & np.isfinite(columns["relative_humidity"])
+    if not both.any():
+        return []
+    made = relative_humidity(temp[both], saturation_pressure(dew[both], "water"), "water")
+    off = float(np.mean(np.abs(made - columns["relative_humidity"][both])))
+    if off <= HUMIDITY_PCT:
+        return []
+    text = f"relative humidity and dew point disagree by {off:.0f} % on the mean; the dew point is used"
+    return [Finding("humidity-pair", "warning", text)]
+
+
+def _spikes(columns: dict[str, Floats]) -> list[Finding]:
+    """Take single hours of air temperature that stand out from both neighbours as gaps, in place."""
+    temp = columns.get("temp_air")
+    if temp is None or len(temp) < 3:
+        return []
+    rise, fall = temp[1:-1] - temp[:-2], temp[1:-1] - temp[2:]
+    out = (np.minimum(np.abs(rise), np.abs(fall)) > SPIKE_K) & (rise * fall > 0.0)
+    if not out.any():
+        return []
+    columns["temp_air"] = temp.copy()
+    columns["temp_air"][1:-1][out] = np.nan
+    count = int(out.sum())
+    text = f"air temperature: {count} single hours more than {SPIKE_K:g} K off both neighbours, taken as gaps"
+    return [Finding("spikes", "corrected", text, count)]
 
 
 def _frozen(columns: dict[str, Floats], sky: SkySun) -> list[Finding]:
