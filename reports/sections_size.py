@@ -103,6 +103,12 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
             f"The boiler ranges from {show.say(small.sizing.boiler_kw, 'kW')} ({small.plan.name}) to "
             f"{show.say(large.sizing.boiler_kw, 'kW')} ({large.plan.name}), margin included."
         )
+    opening = [one.plan.name for one in run.candidates if peaks_as_screens_open(one)]
+    if opening:
+        lines.append(
+            f"With {say.listed(opening)} the largest hour is the one in which the screens open: cold air "
+            "from above falls in and the covering has to be warmed. Opening later or in steps lowers it."
+        )
     if len(run.hours) < len(run.weather):
         lines.append("Sizes are taken from the whole weather record, not only from the season reported.")
     if run.weather.typical:
@@ -110,6 +116,13 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
             "The weather is a typical year: its extremes are removed, so its largest hour alone is no size."
         )
     return tuple(lines)
+
+
+def peaks_as_screens_open(one: CandidateRun) -> bool:
+    """Return whether the largest hour is one in which the screens open."""
+    load, drawn = one.hourly["heat_delivered_w_m2"], one.hourly["screen_drawn_share"]
+    at = int(load.argmax())
+    return bool(one.screens and at > 0 and load[at] > 0 and drawn[at] < drawn[at - 1] - 0.5)
 
 
 def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
@@ -127,7 +140,7 @@ def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
         blocks.append(Points((pretty(on_paper), *([pretty(recovery)] if show.system == "us" else []))))
     if show.system == "si":
         blocks.append(Points(tuple(map(pretty, one.sizing.explained))))
-    if one.sizing.finite is not None:
+    elif one.sizing.finite is not None:
         blocks.append(Text((_finite_words(one, show),)))
     if one.sizing.design_w_m2 > 0:
         blocks += [_share_table(one, show), _store_table(one, show)]

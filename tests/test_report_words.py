@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 from dataclasses import replace
 from pathlib import Path
+from typing import cast
 
 import numpy as np
 import pytest
@@ -12,6 +13,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from canopy.columns import LOSSES, STORES
+from canopy.optics import Screen
 from canopy.run import Run
 from reports import sentences as say
 from reports.display import Display, number, percent
@@ -35,6 +37,7 @@ from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
 from reports.nights import find_nights, night_pattern
 from reports.savings import LOSS_PATHS, saving
+from reports.sections_size import peaks_as_screens_open
 from reports.summary import beaten, house_differences, summaries
 from reports.terminal import StageLine, plain, progress, result_table, show
 from tests.reportcase import Fake, fakes, make_run
@@ -255,3 +258,15 @@ def test_a_saving_is_accounted_for_path_by_path(run: Run) -> None:
 def test_saving_paths_take_every_loss_and_store_once() -> None:
     names = [name for _, columns in LOSS_PATHS for name in columns]
     assert sorted(names) == sorted(LOSSES + STORES)
+
+
+def test_a_peak_at_the_opening_of_screens_is_named(run: Run) -> None:
+    one = run.candidates[0]
+    at = int(one.hourly["heat_delivered_w_m2"].argmax())
+    drawn = np.where(np.arange(len(run.time)) < at, 1.0, 0.0)
+    screen = cast(Screen, object())
+    opened = replace(one, screens=(screen,), hourly={**one.hourly, "screen_drawn_share": drawn})
+    assert peaks_as_screens_open(opened)
+    shut = replace(opened, hourly={**one.hourly, "screen_drawn_share": np.ones(len(run.time))})
+    assert not peaks_as_screens_open(shut)
+    assert not peaks_as_screens_open(one)
