@@ -75,7 +75,8 @@ def fit_quoted(quote: Quote, *, wet: library.Wetting | None = None, age_years: f
 
         loss = library.row(quote.based_on).figures["par_loss_per_year"].value
         covering = aged(covering, loss, age_years)
-    return FittedCovering(covering, _assumed(quote, got), tuple(contradictions), _sensitivity(quote, got))
+    assumed = (*_beyond_plain(quote, base), *_assumed(quote, got))
+    return FittedCovering(covering, assumed, tuple(contradictions), _sensitivity(quote, got))
 
 
 def _light(base: Covering, quote: Quote) -> Covering:
@@ -167,6 +168,21 @@ def _impossible(quote: Quote, base: CoveringFigures) -> list[str]:
             f"thermal_transmittance {thermal:g}: {quote.based_on} lets no long-wave through; choose a film"
         )
     return out
+
+
+def _beyond_plain(quote: Quote, base: Covering) -> list[str]:
+    """Say when more PAR is quoted than the model lets through even without any absorption."""
+    light = base.solar_dry
+    most = {
+        "par_normal": 1.0 - float(light.beam_reflect[reshape.PAR, 0]),
+        "par_hemispherical": 1.0 - float(light.reflect_outside[reshape.PAR]),
+    }
+    return [
+        f"{key} {value:g} is more than {quote.based_on} would pass without any absorption ({limit:.3f}): less "
+        "reflection is taken, as with an anti-reflection coat"
+        for key, limit in most.items()
+        if (value := getattr(quote, key)) is not None and value > limit + MATCH
+    ]
 
 
 def _missed(quote: Quote, got: CoveringFigures) -> list[str]:

@@ -106,6 +106,13 @@ def test_what_is_not_quoted_is_said() -> None:
     assert "haze not quoted" in fitted.sensitivity
 
 
+def test_more_light_than_plain_faces_pass_is_said() -> None:
+    # two faces of n 1.52 pass .918 at most (lossless sheet, Duffie & Beckman form)
+    fitted = fit_quoted(Quote("x", "glass-low-iron-4", par_normal=0.97))
+    assert any("anti-reflection coat" in text and "(0.91" in text for text in fitted.assumed)
+    assert not any("anti-reflection" in text for text in fit_quoted(Quote("y", "glass-clear-4", 0.9)).assumed)
+
+
 def test_age_after_the_fit() -> None:
     new = fit_quoted(Quote("x", "film-pe-plain", par_hemispherical=0.80))
     old = fit_quoted(Quote("x", "film-pe-plain", par_hemispherical=0.80), age_years=3.0)
