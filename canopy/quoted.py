@@ -178,7 +178,7 @@ def _beyond_plain(quote: Quote, base: Covering) -> list[str]:
         "par_hemispherical": 1.0 - float(light.reflect_outside[reshape.PAR]),
     }
     return [
-        f"{key} {value:g} is more than {quote.based_on} would pass without any absorption ({limit:.3f}): less "
+        f"{key} {value:g} is more than {quote.based_on} passes without any absorption ({limit:.3f}): less "
         "reflection is taken, as with an anti-reflection coat"
         for key, limit in most.items()
         if (value := getattr(quote, key)) is not None and value > limit + MATCH

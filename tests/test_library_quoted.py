@@ -32,7 +32,7 @@ def _laws(covering: Covering) -> None:
 CONSISTENT = [
     Quote("a", "film-pe-plain", 0.90, 0.81, 0.30, 0.45),
     Quote("b", "film-double-infrared", None, 0.70, 0.50, 0.10, 3.2),
-    Quote("c", "polycarbonate-twin-10", 0.80, 0.71, None, None, 3.0),
+    Quote("c", "polycarbonate-twin-10", 0.80, 0.68, None, None, 3.0),
     Quote("d", "glass-clear-4", 0.91, 0.84),
     Quote("e", "glass-diffuse-low-haze", None, 0.85, 0.55),
     Quote("f", "film-pe-infrared", 0.87, None, 0.20, 0.30),
