@@ -16,11 +16,13 @@ from canopy.energy import Supply, energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import store_sizes
 from canopy.returns import ManyYears
-from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, FiniteRun, Sizing, rerun, size
+from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size
+from canopy.sizingwords import boiler_words
 from weather.record import Weather
 
 Floats = NDArray[np.float64]
 
+OPENS_BY = 0.3  # share of a screen's area within one step that counts as opening
 AT_LIMIT_K = 0.05  # pipes this close to their highest temperature are at the limit
 
 
@@ -79,26 +81,26 @@ def size_candidate(
         capped=bool(np.isfinite(case.heating.capacity_w_m2)),
         pipes_short_h=_pipes_short_h(case, result),
         many=many,
+        opening=_opening(result),
         stores=stores,
     )
     finite = None
     if found.design_w_m2 > 0.0:
         finite = rerun(case, result, weather.time, found.boiler_w_m2, solver)
-    said = found.explained + ((_finite_words(finite, found.boiler_kw),) if finite is not None else ())
+    said = found.explained
+    if finite is not None:
+        words = boiler_words(found.boiler_kw, finite.deficit_h, finite.lowest_air_c, finite.lowest_at)
+        said = (*said, words)
     used = _energy(heating, result, shared, found, area)
     return replace(found, finite=finite, energy=used, explained=said), night
 
 
-def _finite_words(finite: FiniteRun, boiler_kw: float) -> str:
-    """Return in words what the proposed boiler does in this record."""
-    with_it = f"With the proposed {boiler_kw:.0f} kW the house"
-    if finite.deficit_h == 0.0:
-        return f"{with_it} holds its set-point in every hour of this record."
-    when = str(finite.lowest_at.astype("datetime64[h]")).replace("T", " ")
-    return (
-        f"{with_it} stays more than .1 K below its set-point in {finite.deficit_h:.0f} hours of this record; "
-        f"the lowest air temperature is {finite.lowest_air_c:.1f} °C ({when}:00)."
-    )
+def _opening(result: HeatResult) -> NDArray[np.bool_] | None:
+    """Return the steps in which a screen opens by a good part, or None without screens."""
+    drawn = result.screen_drawn
+    if not len(drawn):
+        return None
+    return np.asarray((drawn < np.roll(drawn, 1, axis=1) - OPENS_BY).any(axis=0))
 
 
 def _pipes_short_h(case: HeatCase, result: HeatResult) -> float:

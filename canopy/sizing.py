@@ -16,8 +16,10 @@ from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import StoreSizes, store_sizes
 from canopy.loadcurve import EXCEEDED_99_6_H, EXCEEDED_99_H, YEAR_H, LoadCurve, exceeded, load_curve
 from canopy.returns import ManyYears, Spell, coldest_spells, many_years
+from canopy.sizingwords import Told, explain
 
 Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
 Times = NDArray[np.datetime64]
 Basis = Literal[
     "design night", "simulated hours (99.6 %)", "coldest of several years", "return level", "none"
@@ -25,7 +27,7 @@ Basis = Literal[
 
 SIZING_YEARS: Final = 20.0  # return period that a size is taken from, where it can be computed
 BELOW_SETPOINT_K: Final = 0.1  # as in the hourly tables
-WHOLE_YEAR_SHARE: Final = 0.95
+MORE_THAN_A_YEAR: Final = 1.05  # from this length on, sums are per mean year
 S_PER_H: Final = 3600.0
 
 
@@ -96,6 +98,15 @@ def choose(night_w_m2: float, exceeded_35_w_m2: float, many: ManyYears | None) -
     return best if best[0] > 0.0 else (0.0, "none")
 
 
+def without_opening(load: Floats, opening: Bools) -> Floats:
+    """Return the load with hours in which a screen opens no higher than the hour after.
+
+    A screen that opens at once lets cold air down and asks the pipes to heat up within the hour. Opened in
+    steps, the same heat spreads over the morning; no boiler is bought for the pulse.
+    """
+    return np.where(opening, np.minimum(load, np.roll(load, -1)), load)
+
+
 def size(
     heat: Floats,
     time: Times,
@@ -108,13 +119,15 @@ def size(
     capped: bool = False,
     pipes_short_h: float = 0.0,
     many: ManyYears | None = None,
+    opening: Bools | None = None,
     stores: Callable[[Floats, float], StoreSizes] = store_sizes,
 ) -> Sizing:
     """Return the sizing of one candidate from its hourly heat.
 
     `heat` (N,) W/m2 floor over the whole record, `time` (N,) start of each step, `temp_outside` (N,) degC;
     `typical`: months from different years; `many` what other years gave (a record of several years in a row
-    gives it by itself). Percentiles are over all hours, scaled to the record's length.
+    gives it by itself); `opening` (N,) hours in which a screen opens: the size does not count their pulse.
+    Percentiles are over all hours, scaled to the record's length.
     """
     q = np.asarray(heat, float)
     hours = len(q) * step_s / S_PER_H
@@ -123,9 +136,10 @@ def size(
     loads = exceeded(q, EXCEEDED_99_6_H), exceeded(q, EXCEEDED_99_H)
     several = many if many is not None or typical else many_years(time, q, temp_outside, step_s)
     night_w = 0.0 if night is None else night.design_w_m2
-    design, basis = choose(night_w, loads[0], several)
+    calm = loads[0] if opening is None else exceeded(without_opening(q, opening), EXCEEDED_99_6_H)
+    design, basis = choose(night_w, calm, several)
     total = float(q.sum()) * step_s / S_PER_H / 1000.0
-    annual = total / years if years > 1.0 + (1.0 - WHOLE_YEAR_SHARE) else total
+    annual = total / years if years > MORE_THAN_A_YEAR else total
     kw = design * floor_area_m2 / 1000.0
     return Sizing(
         peak_w_m2=float(q[peak]),
@@ -151,84 +165,23 @@ def size(
         many=several,
         finite=None,
         energy=None,
-        explained=_explain(q[peak], time[peak], loads, night, basis, several, typical, years, capped)
-        + _short_pipes(pipes_short_h, night),
-    )
-
-
-def _explain(
-    peak: float,
-    peak_at: np.datetime64,
-    loads: tuple[float, float],
-    night: DesignNight | None,
-    basis: Basis,
-    many: ManyYears | None,
-    typical: bool,
-    years: float,
-    capped: bool,
-) -> tuple[str, ...]:
-    """Return the comparison of simulated hours and design night in sentences."""
-    when = str(peak_at.astype("datetime64[m]")).replace("T", " ")
-    said = [
-        f"Highest simulated hour {peak:.0f} W/m2 ({when}); exceeded in 35 h a year {loads[0]:.0f}, "
-        f"in 88 h {loads[1]:.0f} W/m2."
-    ]
-    if typical:
-        said.append("The record is a typical year: its extremes are removed, a colder year is not in it.")
-    if years < WHOLE_YEAR_SHARE:
-        said.append(f"The record is {years:.2f} years long: percentiles are scaled to its length.")
-    if capped:
-        said.append("The study limits the heating: simulated loads are cut off at that limit.")
-    if night is not None:
-        said.append(
-            f"Design night {night.design_w_m2:.0f} W/m2 at {night.outside.temp_c:.1f} °C outside, "
-            f"{night.inside_c:.1f} °C inside, {night.outside.wind_m_s:.1f} m/s, clear and dark, covering "
-            f"dry, {_screens(night)}; on paper (U x area) {night.hand.total_w_m2:.0f} W/m2 "
-            "without a screen."
-        )
-        if night.drawn is not None:
-            said.append(
-                f"The same night with screens open takes {night.open.total_w_m2:.0f} W/m2; with the design "
-                f"heat an open house holds its set-point down to {night.hold_open_c:.1f} °C outside."
+        explained=explain(
+            Told(
+                q,
+                time,
+                loads,
+                calm,
+                night,
+                basis,
+                several,
+                typical,
+                years,
+                capped,
+                pipes_short_h,
+                opening,
+                step_s,
             )
-        said.append(f"Recovery: {night.recovery.text}.")
-        said.append(_why(peak, night))
-    if many is not None:
-        said.append(
-            f"{len(many.years)} years: peak {many.peak_w_m2.min():.0f}-{many.peak_w_m2.max():.0f} W/m2; "
-            f"{many.note}."
-        )
-    said.append(f"The design heat is taken from: {basis}.")
-    return tuple(said)
-
-
-def _screens(night: DesignNight) -> str:
-    return "no screen" if night.design.screens == "none" else f"screens {night.design.screens}"
-
-
-def _short_pipes(hours: float, night: DesignNight | None) -> tuple[str, ...]:
-    """Return what the pipes lack, if anything."""
-    said = []
-    if hours > 0.0:
-        said.append(
-            f"In {hours:.0f} hours the pipes at their highest flow temperature cannot hold the set-point: "
-            "simulated loads are cut off there; more pipe or hotter water is needed."
-        )
-    if night is not None and night.pipes_note:
-        said.append(f"On the design night the pipes fall short: {night.pipes_note}.")
-    return tuple(said)
-
-
-def _why(peak: float, night: DesignNight) -> str:
-    """Return why the two answers differ."""
-    if peak > night.design_w_m2:
-        return (
-            "The simulated peak is higher than the design night: it falls on a colder or windier hour, or on "
-            "the rise of the set-point, when air, crop and pipes take up heat as well."
-        )
-    return (
-        "The design night is higher than the simulated peak: it holds wind, clear sky and cold together for "
-        "a whole night and takes nothing from the soil, which in a real night gives heat back."
+        ),
     )
 
 

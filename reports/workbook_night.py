@@ -40,6 +40,9 @@ def night_table(book: Book, sheet: Any, row: int, at: int, one: CandidateRun) ->
         f"On paper, screens open (W/m2, SI): {hand.text}; together {hand.total_w_m2:.0f} W/m2",
     )
     book.text(sheet, end + 2, 0, f"Recovery (SI): {night.recovery.text}")
+    if book.system == "us":
+        end += 1
+        book.text(sheet, end + 2, 0, "The sentences below are in SI units.")
     found: Sizing | None = one.sizing
     for k, words in enumerate(found.explained if found is not None else (), start=3):
         book.text(sheet, end + k, 0, words)

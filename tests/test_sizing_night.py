@@ -13,7 +13,7 @@ from canopy.designnight import DesignNight, NightLoad, design_night, night_case
 from canopy.designoutside import DesignOutside, percentile_temperature
 from canopy.heatcase import HeatCase
 from canopy.returns import SPELL_H, ManyYears, Spell, YearLoad, combine
-from canopy.sizing import choose, rerun, size
+from canopy.sizing import choose, rerun, size, without_opening
 from canopy.skybands import sky_bands
 from tests.sizingcase import energy_screen, twin_film, winter_case
 
@@ -259,3 +259,18 @@ def combine_peaks(peaks: list[float]) -> ManyYears:
     found = combine([replace(one, spells=SPELLS) for one in years(peaks)])
     assert found is not None
     return found
+
+
+def test_opening_pulse_buys_no_boiler() -> None:
+    load = np.full(480, 100.0)
+    load[::24] = 300.0  # a screen opens every morning
+    opening = np.zeros(480, dtype=bool)
+    opening[::24] = True
+    time = np.datetime64("2001-01-01T00:00:00", "s") + np.arange(480) * np.timedelta64(3600, "s")
+    plain = size(load, time, np.zeros(480), 1000.0, None, 0.0, typical=True)
+    calm = size(load, time, np.zeros(480), 1000.0, None, 0.0, typical=True, opening=opening)
+    assert plain.design_w_m2 == 300.0
+    assert calm.design_w_m2 == 100.0
+    assert calm.load_exceeded_35_h_w_m2 == plain.load_exceeded_35_h_w_m2 == 300.0
+    assert any("of the 2 highest hours a screen opens" in words for words in calm.explained)
+    assert list(without_opening(load, opening)) == [100.0] * 480
