@@ -52,8 +52,9 @@ def hours_words(hours: float) -> str:
 def explain(told: Told) -> tuple[str, ...]:
     """Return the comparison of simulated hours and design night in sentences."""
     peak = int(np.argmax(told.load))
+    when = hour_words(told.time[peak])
     said = [
-        f"Highest simulated hour {told.load[peak]:.0f} W/m2 ({hour_words(told.time[peak])}); exceeded in 35 h "
+        f"Highest simulated hour {told.load[peak]:.0f} W/m2 ({when}); exceeded in 35 h "
         f"a year {told.exceeded[0]:.0f}, in 88 h {told.exceeded[1]:.0f} W/m2."
     ]
     if told.typical:
