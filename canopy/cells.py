@@ -14,10 +14,11 @@ from canopy.planck import share_below
 
 Floats = NDArray[np.float64]
 
-ANGLES = np.radians(np.concatenate([np.arange(0.0, 60.0, 5.0), np.arange(60.0, 91.0, 2.0)]))
-"""Incidence angles of `SolarOptics`: 5 degree steps to 60, then 2 degree steps to 90."""
+ANGLES = np.radians([*range(0, 45, 5), *range(45, 60, 3), *range(60, 90, 2), 89, 90])
+"""Incidence angles of `SolarOptics`: 5 degree steps, from 45 on 3, from 60 on 2. Straight lines between
+them are within .0012 of a clear sheet to 89 degrees, .0025 beyond."""
 
-NODES = 14
+NODES = 12
 """Gauss-Legendre nodes in cos(theta) for isotropic light."""
 
 _SOLAR_STEPS = ((0.28, 0.40, 24), (0.40, 0.75, 35), (0.75, 1.35, 30), (1.35, 2.80, 58), (2.80, 4.0, 12))
