@@ -64,14 +64,14 @@ def _breaks(sec: Section, slope: Floats, ridge: Floats, shift: Floats) -> list[F
     return breaks
 
 
-def _line(sec: Section, slope: Floats, drift: Floats) -> Line:
-    """Return the pieces of all lines from the crop plane."""
+def _line(sec: Section, slope: Floats, drift: Floats, more: tuple[Floats, ...] = ()) -> Line:
+    """Return the pieces of all lines from the crop plane; `more` are further breaks."""
     w = sec.width
     ridge = sec.ridge_at - sec.rise / slope
     ahead = sec.above / slope
     cells = np.floor(ahead / w)
     shift = ahead - cells * w
-    cuts = cut(_breaks(sec, slope, ridge, shift), w)
+    cuts = cut([*_breaks(sec, slope, ridge, shift), *more], w)
     meets, stopped = neighbours(sec, cuts.mid, cuts.at(ridge), cuts.at(slope))
     cell = cuts.at(cells).astype(np.int64) + (cuts.mid < cuts.at(shift))
     none = np.zeros_like(cuts.mid)
@@ -294,7 +294,11 @@ def _inner_line(
     zero = np.zeros_like(room)
     return Line(
         moved,
-        np.where(blocked, 0.0, np.abs(cuts.at(top)) * (high_t - low_t) / (sec.width * sec.spans)),
+        np.where(
+            blocked,
+            0.0,
+            cuts.at(up / sun.up) * np.abs(cuts.at(top)) * (high_t - low_t) / (sec.width * sec.spans),
+        ),
         cuts.at(slope),
         drift,
         shift(low_t),
@@ -336,31 +340,25 @@ def _outer(sec: Section, rays: Rays, every: Ints, *, mirrored: bool) -> Outer:
     part = sec.some(rows, swap=mirrored)
     way = Rays(to_x[rows], rays.along[rows], to_up[rows], rays.other_side[rows])
     sin, cos = _sin_cos(part.tan_front)
-    line = _line(part, way.slope, way.drift)
+    # from here on up the slope the ridge box hides the sun
+    left = part.ridge_at - 0.5 * part.ridge_width
+    high = rays.slope[rows]
+    hidden = left if mirrored else (high * left - part.rise) / (high - part.tan_rear)
+    hidden = np.where(part.ridge_width > 0.0, hidden, np.inf)
+    turn = np.where(part.ridge_width > 0.0, hidden, 0.0) * (part.tan_rear / way.slope - 1.0)
+    line = _line(part, way.slope, way.drift, (np.mod(-turn, part.width),))
     stops, _ = _gutter_stops(part, line)
     line = _some(line, ~stops)
     weight = np.zeros((max(part.spans - 1, 0), len(rows)))
-    sun_slope = rays.up[rows] / across[rows] if not mirrored else np.full(len(rows), np.inf)
     for i in range(1, part.spans):
         use = (line.meets >= i) & (line.stopped >= i) & (line.spans_with(i) > 0)
         if not use.any():
             break
-        low, high = rear_height(part, line, use, i)
-        open_share = 1.0 - line.share(low, high, use)
-        shadow = _ridge_shadow(part, line, use, 0.5 * (low + high), line.cuts.at(sun_slope)[use])
+        low, high_end = rear_height(part, line, use, i)
+        open_share = 1.0 - line.share(low, high_end, use)
+        up_slope = (0.5 * (low + high_end) - part.above) / line.cuts.at(part.tan_rear)[use]
+        shadow = up_slope >= line.cuts.at(hidden)[use]
         value = np.where(shadow, 0.0, line.weight[use] * line.spans_with(i)[use] * open_share)
         weight[i - 1] = gather(line.cuts.row[use], value, len(rows))
+    weight *= way.up / rays.up[rows]  # the mirrored light falls at another height than the sun's
     return Outer(rows, weight, way.across * sin + way.up * cos)
-
-
-def _ridge_shadow(sec: Section, line: Line, use: Bools, height: Floats, sun_slope: Floats) -> Bools:
-    """Return where the ridge box above a point of the rear slope hides it or its sun."""
-    if sec.ridge_width == 0.0:
-        return np.zeros(len(height), dtype=bool)
-    up = height - sec.above
-    at = sec.ridge_at[line.cuts.row[use]]
-    x = up / sec.tan_rear[line.cuts.row[use]]
-    inside = (x >= at - 0.5 * sec.ridge_width) & (up >= sec.rise - sec.ridge_depth)
-    over = up + sun_slope * np.maximum(at - 0.5 * sec.ridge_width - x, 0.0)
-    hidden: Bools = inside | ((over >= sec.rise - sec.ridge_depth) & (over <= sec.rise))
-    return hidden

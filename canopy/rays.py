@@ -89,5 +89,4 @@ def cut(breaks: list[Floats], length: Floats | float) -> Cuts:
 
 def gather(row: Ints, values: Floats, rows: int) -> Floats:
     """Sum the values of all pieces of each direction: (rows,)."""
-    total: Floats = np.bincount(row, weights=values, minlength=rows)
-    return total
+    return np.asarray(np.bincount(row, weights=values, minlength=rows), dtype=np.float64)
