@@ -143,8 +143,10 @@ def optics_of(
     sheets: Sequence[SpectralLayer] = [layer.optics for layer in stack.layers]
     state: Wetness = wetness
     solar = build_solar(sheets, webs=stack.webs or None, wetness=state, drops=stack.drops)
-    if stack.haze is not None and wetness == "dry":
-        solar = set_haze(solar, max(stack.haze, haze_of(solar)))
+    if stack.haze is not None:
+        clear = solar if wetness == "dry" else build_solar(sheets, webs=stack.webs or None)
+        extra = max(0.0, 1.0 - (1.0 - stack.haze) / (1.0 - haze_of(clear)))
+        solar = set_haze(solar, 1.0 - (1.0 - extra) * (1.0 - haze_of(solar)))
     return solar, build_thermal(sheets, wetness=state, drops=stack.drops)
 
 

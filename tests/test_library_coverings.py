@@ -16,6 +16,7 @@ from canopy.library_build import SOLIDS, summary_rows
 from canopy.library_rows import table
 from canopy.materials import material
 from canopy.optics import SolarOptics
+from canopy.reshape import haze_of
 
 NAMES = library.covering_names()
 PAR = SOLAR.index("par")
@@ -205,6 +206,28 @@ LIGHT_WINDOWS = {
 @pytest.mark.parametrize(("name", "window"), LIGHT_WINDOWS.items())
 def test_light_as_sold(name: str, window: tuple[float, float]) -> None:
     assert window[0] <= figures(library.covering(name)).par_normal <= window[1]
+
+
+# diffuse PAR of multi-wall sheets: published laboratory measurements of horticultural sheets, from memory
+DIFFUSE_WINDOWS = {
+    "polycarbonate-twin-8": (0.61, 0.72),
+    "polycarbonate-twin-10": (0.61, 0.72),
+    "polycarbonate-multi-16": (0.54, 0.66),
+    "pmma-twin-16": (0.72, 0.79),
+    "film-double-pe-plain": (0.68, 0.77),
+}
+
+
+@pytest.mark.parametrize(("name", "window"), DIFFUSE_WINDOWS.items())
+def test_diffuse_light_of_sheets_with_gaps(name: str, window: tuple[float, float]) -> None:
+    assert window[0] <= figures(library.covering(name)).par_hemispherical <= window[1]
+
+
+def test_haze_of_the_whole_stays_when_wet() -> None:
+    for name in ("pmma-twin-16", "polycarbonate-multi-16"):
+        for wet in ("film", "drops"):
+            covering = library.covering(name, wet=wet)  # type: ignore[arg-type]
+            assert haze_of(covering.solar_wet) >= haze_of(covering.solar_dry) - 0.002
 
 
 def test_order_of_things() -> None:
