@@ -55,8 +55,8 @@ def _nir_mirror() -> tuple[CoatFilm, ...]:
 COATS = {
     "ar": Coat(
         "ar",
-        (CoatFilm(0.112, 1.27**2),),
-        "one quarter-wave of porous silica, n 1.27, 112 nm (common practice; theory: Macleod, Thin-Film "
+        (CoatFilm(0.110, 1.30**2),),
+        "one quarter-wave of porous silica, n 1.30, 110 nm (common practice; theory: Macleod, Thin-Film "
         "Optical Filters, ch. 4)",
         solar_only=True,
     ),

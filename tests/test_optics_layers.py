@@ -147,11 +147,14 @@ def test_water_darkens_film_to_long_wave() -> None:
 
 
 def test_anti_reflection() -> None:
-    """A quarter-wave of n 1.27 leaves ((ns - n1^2)/(ns + n1^2))^2 = .1 % a face (Macleod, ch. 4)."""
-    bare = build_solar([sheet("soda-lime-low-iron", 4.0)])
-    both = build_solar([sheet("soda-lime-low-iron", 4.0, outer=coat("ar"), inner=coat("ar"))])
-    assert par_normal(both) - par_normal(bare) == pytest.approx(2 * (0.0430 - 0.004), abs=0.012)
-    assert 0.975 < par_normal(both) < 0.995  # two coats: 97-98.5 %, common practice
+    """A quarter-wave of n 1.30 leaves ((ns - n1^2)/(ns + n1^2))^2 = .3 % a face at best (Macleod, ch. 4);
+    glass with two such coats passes .97-.985 of PAR (makers' figures, common practice)."""
+    coated = sheet("soda-lime-low-iron", 4.0, outer=coat("ar"), inner=coat("ar"))
+    ns = float(material("soda-lime-low-iron").index_at(np.array([0.572])).real[0])
+    centre = coated.passage(np.array([4.0 * 0.110 * 1.30]), np.zeros(1))
+    face_power = ((ns - 1.69) / (ns + 1.69)) ** 2
+    assert centre.reflect_outside.mean() == pytest.approx(2.0 * face_power, abs=2e-4)
+    assert 0.97 < par_normal(build_solar([coated])) < 0.985
 
 
 def test_low_emissivity_coat() -> None:
