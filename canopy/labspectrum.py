@@ -17,7 +17,7 @@ from canopy.coveringfigures import figures
 from canopy.labcsv import LabSpectrum, read_lab_csv
 from canopy.lablimits import SOLAR_FROM_UM, SOLAR_TO_UM, joined_up, say_limits
 from canopy.layers import GLASS_DROPS, PLASTIC_DROPS
-from canopy.library_build import SOLIDS, LayerSpec, StackSpec, aged, assemble, optics_of
+from canopy.library_build import SOLIDS, LayerSpec, StackSpec, assemble, optics_of
 from canopy.materials import Material
 from canopy.optics import Covering
 from canopy.sheet import Floats, Passage
@@ -35,7 +35,6 @@ _EDGE_UM: Final = 2.9  # between what the spectrum gives for sunlight and for lo
 _FILM_MM: Final = 0.5  # thinner is a film
 _GLASS_N: Final = 1.52
 _POLYMER_N: Final = 1.50
-_LOSS_PER_YEAR: Final[dict[Kind, float]] = {"glass": 0.0, "rigid plastic": 0.008, "film": 0.02}
 _FACE_SLACK: Final = 0.004  # front and back reflectance closer than this belong to equal faces
 _SMOOTH: Final = 21  # points over which noise is averaged before faces are called different
 _CLEAR: Final = 0.985  # T + R above which a coat on one face cannot be told from one on the other
@@ -73,14 +72,11 @@ def covering_from_spectrum(
     *,
     kind: Kind | None = None,
     wet: Literal["film", "drops", "none"] | None = None,
-    haze: float | None = None,
-    age_years: float = 0.0,
 ) -> LabCovering:
     """Return the covering whose single sheet has this spectrum at normal incidence.
 
     Without thickness the sheet is taken as 4 mm (glass) and only k, mass and resistance depend on it. `kind`
-    None: thinner than .5 mm is film, else glass. `haze` stands in where the file has no
-    transmittance_diffuse column, and overrules it where it has. Raises UserError for a file that cannot be
+    None: thinner than .5 mm is film, else glass. Raises UserError for a file that cannot be
     read or does not cover 0.40-0.70 µm.
     """
     lab = read_lab_csv(path)
@@ -96,14 +92,9 @@ def covering_from_spectrum(
     if dark_known:
         found = with_dark_bands(found, lab.wavelength_um)
     say_limits(lab, found, dark_known, limits)
-    share = _haze(lab, assumed) if haze is None else haze
-    optics = _optics(lab, found, thickness, kind, share, assumed)
+    optics = _optics(lab, found, thickness, kind, _haze(lab, assumed), assumed)
     covering = _record(path, name, thickness, kind, wet, optics, limits)
     assumed.append(_reach(covering))
-    if age_years > 0.0:
-        loss = _LOSS_PER_YEAR[kind]
-        assumed.append(f"ageing not measured: {100.0 * loss:g} % of light a year, as the library's {kind}")
-        covering = aged(covering, loss, age_years)
     return LabCovering(covering, lab.wavelength_um, found, tuple(assumed), tuple(limits))
 
 
@@ -154,7 +145,9 @@ def _faces(
 
 def _haze(lab: LabSpectrum, assumed: list[str]) -> float:
     if lab.scattered is None:
-        assumed.append("haze not measured: 0 (clear); quote it in [[covering]] if the sheet scatters")
+        assumed.append(
+            "haze not measured: 0 (clear); a sheet that scatters needs the column transmittance_diffuse"
+        )
         return 0.0
     par = (lab.wavelength_um >= SOLAR_FROM_UM) & (lab.wavelength_um <= SOLAR_TO_UM)
     return float(np.clip(lab.scattered[par].mean() / max(lab.transmit[par].mean(), 1e-9), 0.0, 1.0))

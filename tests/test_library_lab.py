@@ -235,18 +235,6 @@ def test_scattered_light_gives_haze(tmp_path: Path) -> None:
     head = "wavelength_um,transmittance,reflectance,transmittance_diffuse"
     path = _write(tmp_path / "t.csv", wave, t, r, 0.4 * t, header=head)
     assert covering_from_spectrum(path, "mine", 4.0).covering.haze == pytest.approx(0.4, abs=1e-3)
-    quoted = covering_from_spectrum(path, "mine", 4.0, haze=0.6)
-    assert quoted.covering.haze == pytest.approx(0.6, abs=1e-3)
-
-
-def test_age_of_a_measured_film_is_said(tmp_path: Path) -> None:
-    wave = np.linspace(0.38, 1.1, 100)
-    t, r = _normal("polyethylene", 0.18, wave)
-    path = _write(tmp_path / "t.csv", wave, t, r, header="wavelength_um,transmittance,reflectance")
-    new, old = (covering_from_spectrum(path, "mine", 0.18, age_years=years) for years in (0.0, 3.0))
-    ratio = old.covering.solar_dry.diffuse_in[PAR] / new.covering.solar_dry.diffuse_in[PAR]
-    assert ratio == pytest.approx(0.98**3, abs=1e-9)
-    assert any("ageing not measured" in text for text in old.assumed)
 
 
 def _good() -> list[str]:
