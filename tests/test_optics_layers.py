@@ -91,7 +91,7 @@ def independent_par(name: str, mm: float) -> float:
     ],
 )
 def test_hemispherical_par_integrated_apart(name: str, mm: float) -> None:
-    """Another integration of the same constants agrees to .001 (.003 was asked for)."""
+    """Another integration of the same constants agrees to .001."""
     ours = build_solar([sheet(name, mm)]).diffuse_in[PAR]
     assert ours == pytest.approx(independent_par(name, mm), abs=1e-3)
 
