@@ -76,7 +76,7 @@ def inputs_sheet(book: Book) -> None:
     sheet.set_column(0, 0, 30)
     sheet.set_column(1, len(run.candidates), 24)
     row = 2
-    rows: list[tuple[str, list[Any]]] = [
+    rows: list[tuple[str, list[str]]] = [
         ("covering", [one.plan.covering for one in run.candidates]),
         ("screens", [", ".join(one.plan.screens) for one in run.candidates]),
     ]
@@ -84,11 +84,11 @@ def inputs_sheet(book: Book) -> None:
         for key in type(getattr(run.candidates[0].plan, table)).model_fields:
             values = [getattr(getattr(one.plan, table), key) for one in run.candidates]
             rows.append((f"{table}.{key}", [value_words(value) for value in values]))
-    for key, words in rows:
+    for key, cells in rows:
         book.text(sheet, row, 0, key, book.bold)
-        for col, value in enumerate(words, start=1):
+        for col, value in enumerate(cells, start=1):
             _value(book, sheet, row, col, value)
-        fit_row(sheet, row, *((value, 24) for value in words))
+        fit_row(sheet, row, *((value, 24) for value in cells))
         row += 1
     book.text(sheet, row + 1, 0, "Study file", book.bold)
     for at, line in enumerate(run.study.text.splitlines()[:2000], start=row + 2):

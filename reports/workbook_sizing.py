@@ -9,6 +9,7 @@ import numpy as np
 from canopy.cautions import CAUTIONS
 from canopy.run import CandidateRun
 from canopy.sizing import Sizing
+from canopy.sizingwords import hour_words
 from reports.workbook_base import AREA_ROW, Book, cell, colour, row_head, span, subtitle
 from reports.workbook_energy import energy_table
 from reports.workbook_night import night_table
@@ -68,8 +69,7 @@ def _sizes(book: Book, sheet: Any) -> int:
         for at, (name, _, unit) in enumerate(SIZES, start=AREA_ROW + 1):
             value = getattr(found, name)
             if name == "peak_at":
-                when = str(np.datetime64(value, "m")).replace("T", " ")
-                book.text(sheet, at, col, when if found.peak_w_m2 > 0 else "-")
+                book.text(sheet, at, col, hour_words(value) if found.peak_w_m2 > 0 else "-")
             elif name == "boiler_kw":
                 kw, margin = cell(at - 2, col), cell(at - 1, col)
                 how = book.shown("kW")
@@ -82,15 +82,15 @@ def _sizes(book: Book, sheet: Any) -> int:
     sheet.set_row(last + 1, 30)
     sheet.set_row(2, 30)
     last += 1
-    for words, unit, pick in (
-        ("proposed boiler run through the record: hours short", "h", lambda f: f.deficit_h),
-        ("lowest house air with it", "°C", lambda f: f.lowest_air_c),
+    for name, words, unit in (
+        ("deficit_h", "proposed boiler run through the record: hours short", "h"),
+        ("lowest_air_c", "lowest house air with it", "°C"),
     ):
         last += 1
         row_head(book, sheet, last, words, unit)
         for col, _, found in _columns(book):
             if found.finite is not None:
-                book.put(sheet, last, col, pick(found.finite), unit)
+                book.put(sheet, last, col, float(getattr(found.finite, name)), unit)
     return last
 
 
@@ -184,7 +184,7 @@ def _degree_days(book: Book, sheet: Any, row: int) -> int:
         end += 1
         row_head(book, sheet, end, f"coldest mean over {spell.hours} h, and its start", "°C")
         book.put(sheet, end, 2, spell.mean_c, "°C")
-        book.text(sheet, end, 3, str(np.datetime64(spell.start, "m")).replace("T", " "))
+        book.text(sheet, end, 3, hour_words(spell.start))
     return end
 
 
