@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Final, Literal
 
 import numpy as np
@@ -68,8 +68,6 @@ class RawWeather:
     findings: tuple[Finding, ...] = ()
     design: DesignConditions | None = None
     sun_offset_s: float | None = None
-    civil: bool = False  # stamps are known to follow daylight saving
-    cautions: tuple[str, ...] = field(default=())
 
 
 def column(
