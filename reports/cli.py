@@ -88,11 +88,22 @@ def weather(
     plot: Annotated[
         Path | None, typer.Option(help="Write an interactive page with figures.", show_default=False)
     ] = None,
+    latitude: Annotated[
+        float | None, typer.Option(help="Degrees north, if the file does not say.", show_default=False)
+    ] = None,
+    longitude: Annotated[
+        float | None, typer.Option(help="Degrees east, if the file does not say.", show_default=False)
+    ] = None,
+    timezone: Annotated[
+        str | None, typer.Option(help="IANA zone, if the file does not say.", show_default=False)
+    ] = None,
 ) -> None:
     """Read a weather file and report its quality, monthly climate and design temperatures."""
     from reports.weather_page import weather_command
 
-    typer.echo(weather_command(file, plot))
+    place = {"latitude": latitude, "longitude": longitude, "timezone": timezone}
+    given = {key: value for key, value in place.items() if value is not None}
+    typer.echo(weather_command(file, plot, **given))
 
 
 @app.command()
