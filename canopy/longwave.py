@@ -17,7 +17,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from canopy.bands import THERMAL, BandSet
-from weather.constants import C2_UM_K, STEFAN_BOLTZMANN, ZERO_C_K
+from canopy.planck import share_below
+from weather.constants import STEFAN_BOLTZMANN, ZERO_C_K
 
 Floats = NDArray[np.float64]
 
@@ -26,29 +27,16 @@ FIT_HIGH_C: Final = 115.0
 FIT_DEGREE: Final = 6
 
 
-def share_below(wavelength_um: float, temp_k: Floats) -> Floats:
-    """Share of blackbody power below a wavelength (sum of exponentials; Chang & Rhee 1984).
-
-    Shape of `temp_k`. Accurate to 1e-12 for wavelength x temperature below 1e5 µm K.
-    """
-    temp = np.asarray(temp_k, dtype=float)
-    if wavelength_um <= 0.0:
-        return np.zeros_like(temp)
-    if np.isinf(wavelength_um):
-        return np.ones_like(temp)
-    x = C2_UM_K / (wavelength_um * temp)
-    total = np.zeros_like(temp)
-    for n in range(1, 200):
-        term = np.exp(-n * x) / n * (x**3 + 3 * x**2 / n + 6 * x / n**2 + 6 / n**3)
-        total += term
-        if float(np.max(term, initial=0.0)) < 1e-13:
-            break
-    return np.asarray(15.0 / np.pi**4 * total)
-
-
 def share_between(low_um: float, high_um: float, temp_k: Floats) -> Floats:
-    """Share of blackbody power between two wavelengths, shape of `temp_k`."""
-    return share_below(high_um, temp_k) - share_below(low_um, temp_k)
+    """Share of blackbody power between two wavelengths (0 and inf allowed), shape of `temp_k`."""
+    temp = np.asarray(temp_k, dtype=float)
+
+    def below(wavelength_um: float) -> Floats:
+        if np.isinf(wavelength_um):
+            return np.ones_like(temp)
+        return share_below(wavelength_um * temp) if wavelength_um > 0.0 else np.zeros_like(temp)
+
+    return below(high_um) - below(low_um)
 
 
 @lru_cache(maxsize=16)
