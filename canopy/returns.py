@@ -136,11 +136,16 @@ def return_levels(yearly_max: Floats, periods: tuple[float, ...] = RETURN_YEARS)
     return tuple(levels)
 
 
-def year_load(time: Times, load: Floats, temp_air: Floats, step_s: float) -> YearLoad:
-    """Return what one year brings to the comparison: `load` (N,) W/m2 floor, `temp_air` (N,) degC outside."""
+def year_load(
+    time: Times, load: Floats, temp_air: Floats, step_s: float, sized: Floats | None = None
+) -> YearLoad:
+    """Return what one year brings to the comparison: `load` (N,) W/m2 floor, `temp_air` (N,) degC outside.
+
+    `sized` (N,): the load that peaks are taken from, where not `load` itself (`sizing.without_opening`).
+    """
     return YearLoad(
         year=int(time[len(time) // 2].astype("datetime64[Y]").astype(int)) + 1970,
-        peak_w_m2=float(np.max(load)),
+        peak_w_m2=float(np.max(load if sized is None else sized)),
         heat_kwh_m2=float(np.sum(load)) * step_s / S_PER_H / 1000.0,
         coldest_hour_c=float(np.min(temp_air)),
         spells=coldest_spells(time, temp_air, step_s),
@@ -172,7 +177,9 @@ def combine(loads: Sequence[YearLoad]) -> ManyYears | None:
     )
 
 
-def many_years(time: Times, load: Floats, temp_air: Floats, step_s: float) -> ManyYears | None:
+def many_years(
+    time: Times, load: Floats, temp_air: Floats, step_s: float, sized: Floats | None = None
+) -> ManyYears | None:
     """Return what several years in a row say, or None for less than two whole calendar years.
 
     `time` (N,) start of each step, `load` (N,) W/m2 floor, `temp_air` (N,) degC outside. Calendar years; a
@@ -182,4 +189,5 @@ def many_years(time: Times, load: Floats, temp_air: Floats, step_s: float) -> Ma
     found, counts = np.unique(label, return_counts=True)
     least = WHOLE_YEAR_SHARE * YEAR_H * S_PER_H / step_s
     rows = [label == year for year, count in zip(found, counts, strict=True) if count >= least]
-    return combine([year_load(time[r], load[r], temp_air[r], step_s) for r in rows])
+    peaks = load if sized is None else sized
+    return combine([year_load(time[r], load[r], temp_air[r], step_s, peaks[r]) for r in rows])

@@ -21,7 +21,7 @@ from canopy.hourly import closures, hourly_columns
 from canopy.ledger import by_group, groups
 from canopy.returns import ManyYears, combine, year_load
 from canopy.run import CandidateRun, Run
-from canopy.sizecase import SizingShared, size_candidate, sizing_shared
+from canopy.sizecase import SizingShared, size_candidate, sized_load, sizing_shared
 from canopy.studyfile import Study
 from weather.load import WeatherRequest, load_many, load_weather
 from weather.record import Weather
@@ -124,7 +124,10 @@ def _many(done: Budget, place: Place, others: tuple[Place, ...]) -> ManyYears | 
         return None
     runs = [(place, done.heat)] + [(other, budget(done.plan, other).heat) for other in others]
     return combine(
-        [year_load(p.weather.time, h.heat_delivered, p.weather.temp_air, p.weather.step_s) for p, h in runs]
+        [
+            year_load(p.weather.time, h.heat_delivered, p.weather.temp_air, p.weather.step_s, sized_load(h))
+            for p, h in runs
+        ]
     )
 
 

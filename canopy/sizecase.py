@@ -16,7 +16,7 @@ from canopy.energy import Supply, energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import store_sizes
 from canopy.returns import ManyYears
-from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size
+from canopy.sizing import BELOW_SETPOINT_K, S_PER_H, Sizing, rerun, size, without_opening
 from canopy.sizingwords import boiler_words
 from weather.record import Weather
 
@@ -93,6 +93,12 @@ def size_candidate(
         said = (*said, words)
     used = _energy(heating, result, shared, found, area)
     return replace(found, finite=finite, energy=used, explained=said), night
+
+
+def sized_load(result: HeatResult) -> Floats:
+    """Return the load that the heating is sized on: heat delivered without the pulse of opening screens."""
+    opening = _opening(result)
+    return result.heat_delivered if opening is None else without_opening(result.heat_delivered, opening)
 
 
 def _opening(result: HeatResult) -> NDArray[np.bool_] | None:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
-from typing import Final, Literal
+from typing import Any, Final, Literal
 
 import numpy as np
 from numpy.typing import NDArray
@@ -130,29 +130,20 @@ def size(
     Percentiles are over all hours, scaled to the record's length.
     """
     q = np.asarray(heat, float)
-    hours = len(q) * step_s / S_PER_H
-    years = hours / YEAR_H
-    peak = int(np.argmax(q))
+    years = len(q) * step_s / S_PER_H / YEAR_H
     loads = exceeded(q, EXCEEDED_99_6_H), exceeded(q, EXCEEDED_99_H)
-    several = many if many is not None or typical else many_years(time, q, temp_outside, step_s)
-    night_w = 0.0 if night is None else night.design_w_m2
-    calm = loads[0] if opening is None else exceeded(without_opening(q, opening), EXCEEDED_99_6_H)
-    design, basis = choose(night_w, calm, several)
+    sized = q if opening is None else without_opening(q, opening)
+    calm = exceeded(sized, EXCEEDED_99_6_H)
+    several = many if many is not None or typical else many_years(time, q, temp_outside, step_s, sized)
+    design, basis = choose(0.0 if night is None else night.design_w_m2, calm, several)
+    told = Told(
+        q, time, loads, calm, night, basis, several, typical, years, capped, pipes_short_h, opening, step_s
+    )  # fmt: skip
     total = float(q.sum()) * step_s / S_PER_H / 1000.0
     annual = total / years if years > MORE_THAN_A_YEAR else total
-    kw = design * floor_area_m2 / 1000.0
     return Sizing(
-        peak_w_m2=float(q[peak]),
-        peak_at=time[peak],
-        load_exceeded_35_h_w_m2=loads[0],
-        load_exceeded_88_h_w_m2=loads[1],
-        design_night_w_m2=night_w if night is not None else float("nan"),
-        design_outside_c=night.outside.temp_c if night is not None else float("nan"),
-        annual_heat_kwh_m2=annual,
-        full_load_hours=annual * 1000.0 / design if design > 0.0 else 0.0,
-        design_heat_kw=kw,
+        **_headline(told, annual, design, floor_area_m2, margin_pct),
         margin_pct=margin_pct,
-        boiler_kw=kw * (1.0 + margin_pct / 100.0),
         design_w_m2=design,
         basis=basis,
         capped=capped,
@@ -165,24 +156,26 @@ def size(
         many=several,
         finite=None,
         energy=None,
-        explained=explain(
-            Told(
-                q,
-                time,
-                loads,
-                calm,
-                night,
-                basis,
-                several,
-                typical,
-                years,
-                capped,
-                pipes_short_h,
-                opening,
-                step_s,
-            )
-        ),
+        explained=explain(told),
     )
+
+
+def _headline(told: Told, annual: float, design: float, area_m2: float, margin_pct: float) -> dict[str, Any]:
+    """Return the figures of sizing.csv."""
+    peak, night = int(np.argmax(told.load)), told.night
+    kw = design * area_m2 / 1000.0
+    return {
+        "peak_w_m2": float(told.load[peak]),
+        "peak_at": told.time[peak],
+        "load_exceeded_35_h_w_m2": told.exceeded[0],
+        "load_exceeded_88_h_w_m2": told.exceeded[1],
+        "design_night_w_m2": float("nan") if night is None else night.design_w_m2,
+        "design_outside_c": float("nan") if night is None else night.outside.temp_c,
+        "annual_heat_kwh_m2": annual,
+        "full_load_hours": annual * 1000.0 / design if design > 0.0 else 0.0,
+        "design_heat_kw": kw,
+        "boiler_kw": kw * (1.0 + margin_pct / 100.0),
+    }
 
 
 def rerun(
