@@ -14,7 +14,7 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from canopy.leafangle import projection
+from canopy.leafangle import ellipsoid_area, projection
 from canopy.standtable import LEAST_LAI, diffuse_gap, lai_interpolate, lai_nodes
 
 Floats = NDArray[np.float64]
@@ -22,7 +22,18 @@ Floats = NDArray[np.float64]
 FLOOR_POINTS: Final = 20  # across one spacing, from row middle to row middle
 _MU_NODES: Final = 20
 _TURN_NODES: Final = 16
+_DEPTH_NODES: Final = 5  # denser near the top
 _LEAST_SWEEP: Final = 1e-6  # of the spacing: a ray along the rows
+
+
+@lru_cache(maxsize=1)
+def _depth_table() -> tuple[Floats, Floats]:
+    """Return mean depth (share, negative so that it rises) and optical thickness of an even layer.
+
+    Of light that is met in a layer of thickness x: mean depth 1 / x - 1 / (exp(x) - 1).
+    """
+    thick = np.geomspace(1e-3, 3000.0, 600)
+    return 1.0 / np.expm1(np.minimum(thick, 700.0)) - 1.0 / thick, thick
 
 
 @dataclass(frozen=True)
@@ -70,6 +81,21 @@ class Rows:
             step > 1e-4, np.sinh(np.minimum(step, 300.0)) / np.where(step > 1e-4, step, 1.0), 1.0
         )
         return np.asarray((np.diff(turns, axis=0) * middle * swell).sum(0))
+
+    def like_zenith(self, thickness: Floats, sweep: Floats, chi: float, like_lai: Floats) -> Floats:
+        """Return where the sun stands in the even stand of `like_lai` that is met at the same mean depth.
+
+        The mean depth is the integral of exact gaps over parts of the rows' height, as a share of it.
+        """
+        points, weights = np.polynomial.legendre.leggauss(_DEPTH_NODES)
+        root, weights = 0.5 * (points + 1.0), 0.5 * weights
+        above = np.zeros_like(sweep)
+        for part, weight in zip(root**2, 2.0 * root * weights, strict=True):
+            above += weight * (1.0 - self.gap(thickness * part, np.maximum(sweep * part, _LEAST_SWEEP**2)))
+        depth = 1.0 - above / np.maximum(1.0 - self.gap(thickness, sweep), 1e-30)
+        thick = np.interp(-depth, *_depth_table())
+        tan2 = (thick / np.maximum(like_lai, 1e-30) * ellipsoid_area(chi)) ** 2 - chi**2
+        return np.asarray(np.arctan(np.sqrt(np.maximum(tan2, 0.0))))
 
     def reaching(self, thickness: Floats, sweep: Floats) -> Floats:
         """Return the share of a beam that reaches points of the floor, (FLOOR_POINTS, ...)."""

@@ -43,22 +43,34 @@ class Stand:
 class _Met:
     """How leaves meet light, rows or not: (N,) each. `like` is the even stand that scatters alike."""
 
+    lai: Floats
     like: Floats
     beam: Floats  # share of the beam that leaves meet
     diffuse: Floats  # of isotropic light
     beam_patch: Floats  # of light sent up from where the beam reached the floor
     diffuse_patch: Floats  # of light sent up from where isotropic light reached the floor
     kb: Floats  # extinction coefficient of the beam
+    sun: Floats  # zenith, radians
+    like_sun: Floats  # zenith at which the even stand is met at the same mean depth
+
+    @property
+    def lit_share(self) -> Floats:
+        """Sunlit share of leaf area over that of the even stand that scatters alike."""
+        like = -np.expm1(-self.kb * self.like) / np.maximum(self.like, 1e-30)
+        return np.asarray(self.beam / np.maximum(self.lai * like, 1e-30))
 
     def at(self, hours: Bools) -> _Met:
         """Return some hours only."""
         return _Met(
+            self.lai[hours],
             self.like[hours],
             self.beam[hours],
             self.diffuse[hours],
             self.beam_patch[hours],
             self.diffuse_patch[hours],
             self.kb[hours],
+            self.sun[hours],
+            self.like_sun[hours],
         )
 
 
@@ -102,7 +114,7 @@ def respond(
     diffuse = _diffuse(table, met, reflect)
     beam = _Answer(diffuse.crop.copy(), diffuse.ground.copy(), diffuse.up.copy(), np.zeros_like(diffuse.up))
     if up.any():
-        by_day = _beam(table, met.at(up), sun[up], reflect)
+        by_day = _beam(table, met.at(up), reflect)
         for whole, part in zip(_parts(beam), _parts(by_day.beam), strict=True):
             whole[:, up] = part
         diffuse.sunlit[:, up] = by_day.diffuse_sunlit
@@ -130,7 +142,7 @@ def _even(stand: Stand, table: StandTable, lai: Floats, sun: Floats) -> _Met:
     """Leaves spread evenly: the floor is lit evenly."""
     kb = extinction(stand.chi, sun)
     diffuse = table.interception(lai)
-    return _Met(lai, -np.expm1(-kb * lai), diffuse, diffuse, diffuse, kb)
+    return _Met(lai, lai, -np.expm1(-kb * lai), diffuse, diffuse, diffuse, kb, sun, sun)
 
 
 def _in_rows(stand: Stand, lai: Floats, sun: Floats, azimuth_deg: Floats, up: Bools) -> _Met:
@@ -148,7 +160,9 @@ def _in_rows(stand: Stand, lai: Floats, sun: Floats, azimuth_deg: Floats, up: Bo
     beam[up] = 1.0 - rows.gap(thick, sweep)
     lit = rows.reaching(thick, sweep)
     beam_patch[up] = 1.0 - (lit * sky[up].T).mean(0) / np.maximum(lit.mean(0), 1e-30)
-    return _Met(sight.like_lai(lai), beam, diffuse, beam_patch, diffuse_patch, kb)
+    like, like_sun = sight.like_lai(lai), sun.copy()
+    like_sun[up] = rows.like_zenith(thick, sweep, stand.chi, like[up])
+    return _Met(lai, like, beam, diffuse, beam_patch, diffuse_patch, kb, sun, like_sun)
 
 
 def _diffuse(table: StandTable, met: _Met, reflect: Floats) -> _Answer:
@@ -163,17 +177,28 @@ class _Day:
     diffuse_sunlit: Floats  # (B, N)
 
 
-def _beam(table: StandTable, met: _Met, sun: Floats, reflect: Floats) -> _Day:
+def _beam(table: StandTable, met: _Met, reflect: Floats) -> _Day:
     """Return the answer to the beam, and what sunlit leaves take of isotropic light."""
-    shares = table.beam_shares(met.like, sun)
+    shares = table.beam_shares(met.like, met.like_sun)
+    even = np.array_equal(met.like_sun, met.sun)
+    light = shares if even else table.beam_shares(met.like, met.sun)  # what the sun sees
+    lit = 1.0 if even else met.lit_share
     down, back = table.diffuse_shares(met.like)
     keep = 1.0 - table.scatter[:, None]
     answer, from_below = _bounced(
         met.beam, shares.beam_down, shares.beam_up, met.beam_patch, met.diffuse, down, back, reflect
     )
-    sunlit = keep * (met.beam * (1.0 + shares.beam_met_sunlit) + from_below * shares.below_met_sunlit)
-    _, from_below = _bounced(met.diffuse, down, back, met.diffuse_patch, met.diffuse, down, back, reflect)
-    diffuse_sunlit = keep * (met.diffuse * shares.top_met_sunlit + from_below * shares.below_met_sunlit)
+    sunlit = keep * (
+        met.beam * (1.0 + lit * light.beam_met_sunlit) + lit * from_below * light.below_met_sunlit
+    )
+    isotropic, from_below = _bounced(
+        met.diffuse, down, back, met.diffuse_patch, met.diffuse, down, back, reflect
+    )
+    diffuse_sunlit = keep * (
+        np.minimum(lit, 1.0) * met.diffuse * light.top_met_sunlit + lit * from_below * light.below_met_sunlit
+    )
+    sunlit = np.minimum(sunlit, answer.crop)
+    diffuse_sunlit = np.minimum(diffuse_sunlit, isotropic.crop)
     return _Day(_Answer(answer.crop, answer.ground, answer.up, sunlit), diffuse_sunlit)
 
 
