@@ -36,7 +36,13 @@ COMPARED: Final = (
     "frost_h",
     "wet_covering_h",
 )
+STORED_DIGITS: Final = 6  # far beyond what is printed, and a third less to write
 LOOK: Final = {"min": ", lowest", "max": ", highest", "mean": ", mean", "hours": " (hours)"}
+
+
+def shown_days(book: Book, one: CandidateRun, name: str, unit: str) -> Floats:
+    """Return one daily column as the workbook holds it: in the shown unit, to the sixth decimal."""
+    return np.round(book.shown(unit).convert(one.daily[name]), STORED_DIGITS)
 
 
 def heading(column: Column, how: How) -> str:
@@ -73,7 +79,7 @@ def daily_sheet(book: Book, at: int, one: CandidateRun) -> None:
     for name, column, how in DAILY:
         place = PLACE[name]
         unit = book.shown(day_unit(column, how))
-        values = unit.convert(one.daily[name])
+        values = shown_days(book, one, name, day_unit(column, how))
         sheet.set_column(place, place, 11, book.number(unit.number_format))
         book.text(sheet, 1, place, heading(column, how), book.head)
         book.text(sheet, 2, place, name, book.name)
@@ -150,7 +156,7 @@ def monthly_sheet(book: Book) -> None:
         book.text(sheet, 2, col, name, book.name)
         book.text(sheet, 3, col, unit.text, book.unit)
         for at, one in enumerate(run.candidates):
-            values = unit.convert(one.daily[name])
+            values = shown_days(book, one, name, day_unit(column, how))
             for m, inside in enumerate(rows):
                 first, last = FIRST_ROW + int(inside[0]), FIRST_ROW + int(inside[-1])
                 text = f"={FUNCTION.get(how, 'SUM')}({span(day_sheet(at), first, last, PLACE[name])})"
@@ -200,7 +206,7 @@ def comparison_sheet(book: Book) -> None:
         book.text(sheet, 1, col, heading(column, how), book.head)
         book.text(sheet, 2, col, unit.text, book.unit)
         for at, one in enumerate(run.candidates):
-            value = add_up(unit.convert(one.daily[name]), how)
+            value = add_up(shown_days(book, one, name, day_unit(column, how)), how)
             text = f"='{day_sheet(at)}'!{cell(TOTALS_ROW, PLACE[name])}"
             book.formula(sheet, 3 + at, col, text, value, unit.number_format)
     for at, one in enumerate(run.candidates):
