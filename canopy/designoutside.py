@@ -40,10 +40,11 @@ def percentile_temperature(temp_air: Floats, exceeded_h: float) -> float:
     return float(np.interp(exceeded_h / YEAR_H * len(rising), np.arange(len(rising)), rising))
 
 
-def design_outside(weather: Weather) -> DesignOutside:
-    """Return the outside of the design night.
+def design_outside(weather: Weather, others: tuple[Weather, ...] = ()) -> DesignOutside:
+    """Return the outside of the design night; `others` are further years of the same place.
 
-    Temperature: the 99.6 % heating design condition printed in the file, else the record's own 99.6 %.
+    Temperature: the 99.6 % heating design condition printed in the file, else the 99.6 % of
+    the record and the further years.
     Wind: the mean of the coldest 1 % of hours, at least 4 m/s. Humidity: their mean. Sky: clear, by the model
     in use.
     """
@@ -51,13 +52,15 @@ def design_outside(weather: Weather) -> DesignOutside:
     from weather.psychro import vapour_pressure
     from weather.sky import sky_longwave
 
-    own = percentile_temperature(weather.temp_air, EXCEEDED_99_6_H)
+    every = np.concatenate([one.temp_air for one in (weather, *others)])
+    own = percentile_temperature(every, EXCEEDED_99_6_H)
     if weather.design is not None:
         temp, source = weather.design.heating_99_6_c, f"99.6 % design temperature, {weather.design.source}"
     else:
-        hours = len(weather) * weather.step_s / 3600.0
+        hours = len(every) * weather.step_s / 3600.0
         temp = own
-        source = f"99.6 % of this record's {hours:.0f} hours (no design conditions in the file)"
+        records = "this record's" if not others else f"{1 + len(others)} records'"
+        source = f"99.6 % of {records} {hours:.0f} hours (no design conditions in the file)"
         if hours < WHOLE_YEAR_SHARE * YEAR_H:
             source += "; the record is shorter than a year"
     count = max(1, round(EXCEEDED_99_H / YEAR_H * len(weather)))

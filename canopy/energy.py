@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from canopy.energykeys import HeatPumpKeys, TariffKeys
 from canopy.fuel import FuelUse, burn, fuel
 from canopy.heatpump import HeatPump, HeatPumpRun, run_heat_pump
+from canopy.loadcurve import heating_only
 from canopy.tariff import Cost, Tariff, cost
 
 Floats = NDArray[np.float64]
@@ -100,10 +101,11 @@ def energy(
     Errors: UserError for an unknown fuel.
     """
     kind = fuel(supply.fuel)
-    boiler_load, pump, power = np.asarray(load, float), None, None
+    asked = heating_only(load)
+    boiler_load, pump, power = asked, None, None
     power_cost: Cost | None = None
     if supply.heat_pump is not None:
-        pump = run_heat_pump(load, flow_c, outside_c, humidity_pct, make_pump(supply.heat_pump), step_s)
+        pump = run_heat_pump(asked, flow_c, outside_c, humidity_pct, make_pump(supply.heat_pump), step_s)
         boiler_load = pump.backup
         co2 = supply.heat_pump.co2_kg_per_kwh
         power = burn(pump.electricity, floor_area_m2, fuel("electricity"), 1.0, step_s, co2)

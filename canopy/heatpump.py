@@ -2,7 +2,7 @@
 
 Performance: regression on maker's and test data of Staffell, Brett, Brandon & Hawkes (2012), Energy Environ.
 Sci. 5:9291, in the lift from source to flow water; air source for lifts of 15-60 K, ground source (used for
-water too) for 20-60 K. Hours beyond that range are counted, not hidden.
+water too) for 20-60 K. Below the range the performance at its end is taken; hours above it are counted.
 """
 
 from __future__ import annotations
@@ -61,7 +61,7 @@ class HeatPumpRun:
     too_hot_h: float  # needed flow above its limit
     short_h: float  # capacity reached, back-up helps
     defrost_h: float
-    outside_range_h: float  # running at a lift outside the regression's range
+    outside_range_h: float  # running at a higher lift than the regression's data
 
 
 def source_temperature(pump: HeatPump, outside_c: Floats) -> Floats:
@@ -116,7 +116,7 @@ def run_heat_pump(
     cop = performance(pump.source, source, flow_c) / np.where(frosting, 1.0 + pump.defrost_pct / 100.0, 1.0)
     power = np.where(running, heat / cop, 0.0)
     lift = flow_c - source
-    low, high = LIFT_RANGE_K[pump.source]
+    high = LIFT_RANGE_K[pump.source][1]
     hours = step_s / S_PER_H
     total, electricity = float(q.sum()), float(power.sum())
 
@@ -134,5 +134,5 @@ def run_heat_pump(
         too_hot_h=counted(hot),
         short_h=counted(running & (q > pump.capacity_w_m2)),
         defrost_h=counted(frosting),
-        outside_range_h=counted(running & ((lift < low) | (lift > high))),
+        outside_range_h=counted(running & (lift > high)),
     )

@@ -46,7 +46,7 @@ def exceeded(load: Floats, hours_per_year: float) -> float:
     return float(np.interp(rank, np.arange(len(falling)), falling))
 
 
-def _heating(load: Floats) -> Floats:
+def heating_only(load: Floats) -> Floats:
     """Return the load with hours of no heating at exactly zero."""
     q = np.asarray(load, float)
     return np.where(q < IDLE_W_M2, 0.0, q)
@@ -64,7 +64,7 @@ def base_load(load: Floats, step_s: float, hours_per_year: float = BASE_LOAD_H) 
     A unit of size s delivers sum min(q, s); its full-load hours sum min(q, s) / s fall with s, and between
     two sorted loads they are linear in 1/s, so the size has a closed form. 0: no size reaches them.
     """
-    rising = np.sort(_heating(load))
+    rising = np.sort(heating_only(load))
     n = len(rising)
     need = hours_per_year / YEAR_H * n  # steps at full load
     steps_s = np.arange(n, 0, -1)  # loads at or above rising[k]
@@ -87,7 +87,7 @@ def load_curve(load: Floats, design_w_m2: float, step_s: float = S_PER_H, points
     `load` (N,) W/m2 floor, `design_w_m2` > 0 (0 allowed: tables of an unheated house are zero).
     """
     step_h = step_s / S_PER_H
-    q = _heating(load)
+    q = heating_only(load)
     falling = np.sort(q)[::-1]
     pick = np.unique(np.linspace(0, len(q) - 1, min(points, len(q))).round().astype(int))
     edges = np.asarray(PART_LOAD_EDGES)

@@ -10,6 +10,8 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
+from canopy.loadcurve import heating_only
+
 Floats = NDArray[np.float64]
 Times = NDArray[np.datetime64]
 
@@ -145,7 +147,7 @@ def year_load(
     """
     return YearLoad(
         year=int(time[len(time) // 2].astype("datetime64[Y]").astype(int)) + 1970,
-        peak_w_m2=float(np.max(load if sized is None else sized)),
+        peak_w_m2=float(np.max(heating_only(load if sized is None else sized))),
         heat_kwh_m2=float(np.sum(load)) * step_s / S_PER_H / 1000.0,
         coldest_hour_c=float(np.min(temp_air)),
         spells=coldest_spells(time, temp_air, step_s),

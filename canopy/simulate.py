@@ -190,7 +190,7 @@ def simulate(study: Study, progress: Progress | None = None) -> Run:
     with clock.stage("sunlight and sky"):
         place = make_place(study, weather)
         others = tuple(make_place(study, one) for one in further)
-        sizes = sizing_shared(weather)
+        sizes = sizing_shared(weather, further)
     calendar = _calendar(weather)
     done: list[CandidateRun] = []
     for at, plan in enumerate(study.plans, start=1):

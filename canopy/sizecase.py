@@ -35,11 +35,11 @@ class SizingShared:
     civil_hour: Floats  # (N,)
 
 
-def sizing_shared(weather: Weather) -> SizingShared:
-    """Return the design conditions and civil hours of a record."""
+def sizing_shared(weather: Weather, others: tuple[Weather, ...] = ()) -> SizingShared:
+    """Return the design conditions of a record (and of further years), and its civil hours."""
     from weather.site import civil_hours
 
-    return SizingShared(weather, design_outside(weather), civil_hours(weather))
+    return SizingShared(weather, design_outside(weather, others), civil_hours(weather))
 
 
 def size_candidate(

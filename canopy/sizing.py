@@ -14,7 +14,15 @@ from canopy.designnight import DesignNight
 from canopy.energy import Energy
 from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatstore import StoreSizes, store_sizes
-from canopy.loadcurve import EXCEEDED_99_6_H, EXCEEDED_99_H, YEAR_H, LoadCurve, exceeded, load_curve
+from canopy.loadcurve import (
+    EXCEEDED_99_6_H,
+    EXCEEDED_99_H,
+    YEAR_H,
+    LoadCurve,
+    exceeded,
+    heating_only,
+    load_curve,
+)
 from canopy.returns import ManyYears, Spell, coldest_spells, many_years
 from canopy.sizingwords import Told, explain
 
@@ -129,7 +137,7 @@ def size(
     gives it by itself); `opening` (N,) hours in which a screen opens: the size does not count their pulse.
     Percentiles are over all hours, scaled to the record's length.
     """
-    q = np.asarray(heat, float)
+    q = heating_only(heat)
     years = len(q) * step_s / S_PER_H / YEAR_H
     loads = exceeded(q, EXCEEDED_99_6_H), exceeded(q, EXCEEDED_99_H)
     sized = q if opening is None else without_opening(q, opening)

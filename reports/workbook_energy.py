@@ -32,7 +32,7 @@ PUMP: Final = (
     ("needed flow too hot", "too_hot_h", "h"),
     ("capacity reached, back-up helps", "short_h", "h"),
     ("defrosting", "defrost_h", "h"),
-    ("running outside the range of the performance data", "outside_range_h", "h"),
+    ("running at a higher lift than the performance data", "outside_range_h", "h"),
 )
 
 

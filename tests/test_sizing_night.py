@@ -274,3 +274,10 @@ def test_opening_pulse_buys_no_boiler() -> None:
     assert calm.load_exceeded_35_h_w_m2 == plain.load_exceeded_35_h_w_m2 == 300.0
     assert any("of the 2 highest hours a screen opens" in words for words in calm.explained)
     assert list(without_opening(load, opening)) == [100.0] * 480
+
+
+def test_unheated_house_has_no_size() -> None:
+    time = np.datetime64("2001-01-01T00:00:00", "s") + np.arange(480) * np.timedelta64(3600, "s")
+    found = size(np.full(480, 1e-12), time, np.zeros(480), 1000.0, None, 15.0, typical=False)
+    assert (found.design_w_m2, found.boiler_kw, found.full_load_hours, found.basis) == (0.0, 0.0, 0.0, "none")
+    assert found.peak_w_m2 == 0.0

@@ -39,6 +39,15 @@ def test_design_conditions_of_greensboro(greensboro: Weather) -> None:
     assert len(found.coldest) == 88
 
 
+def test_further_years_count(greensboro: Weather) -> None:
+    colder = replace(greensboro, temp_air=greensboro.temp_air - 4.0)
+    both = design_outside(greensboro, (colder,))
+    every = np.concatenate([greensboro.temp_air, colder.temp_air])
+    assert np.count_nonzero(every < both.temp_c) <= 70  # twice 35 h in two years
+    assert both.temp_c < design_outside(greensboro).temp_c - 1.0
+    assert "2 records' 17520 hours" in both.temp_source
+
+
 def test_header_design_conditions_come_first(greensboro: Weather) -> None:
     given = replace(greensboro, design=DesignConditions(-8.1, -5.6, "header of the file"))
     found = design_outside(given)
