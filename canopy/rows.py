@@ -105,6 +105,15 @@ class Rows:
         return np.asarray(np.exp(-thickness * inside))
 
 
+def rows_of(
+    width: float | None, spacing: float | None, height: float, azimuth: float | None, ridge_azimuth: float
+) -> Rows | None:
+    """Return a crop's rows, along the ridge unless an azimuth is given; None when it has no rows."""
+    if width is None or spacing is None:
+        return None
+    return Rows(width, spacing, height, ridge_azimuth if azimuth is None else azimuth)
+
+
 @dataclass(frozen=True)
 class RowSight:
     """What rows of one shape and leaf angle do with isotropic light, by leaf area of the floor."""
