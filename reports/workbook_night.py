@@ -52,7 +52,8 @@ def night_table(book: Book, sheet: Any, row: int, at: int, one: CandidateRun) ->
 def _steps(book: Book, sheet: Any, row: int, at: int, load: NightLoad) -> int:
     """Write the components of one state of the screens; kW and totals are formulas."""
     flux, power = book.shown("W/m2"), book.shown("kW")
-    book.text(sheet, row, 0, f"screens: {load.screens}", book.head)
+    state = "no screen" if load.screens == "none" else f"screens: {load.screens}"
+    book.text(sheet, row, 0, state, book.head)
     for k, words in enumerate((flux.text, power.text, "how (SI)"), start=1):
         book.text(sheet, row, k, words, book.head)
     area = cell(AREA_ROW, 2 + at, fixed=True)
