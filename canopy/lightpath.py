@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from canopy.archlight import ArchLight, arch_light
 from canopy.gablelight import GableLight, gable_light
 from canopy.house import House, check_shape
 from canopy.light import HouseTransmission
@@ -23,7 +24,7 @@ from canopy.skyparts import Hills, SkyGrid, check_hills, hill_height, sky_grid, 
 from canopy.structure import upright_per_floor
 from weather.record import Weather
 
-RoofLight = GableLight
+RoofLight = GableLight | ArchLight
 
 
 @dataclass(frozen=True)
@@ -77,7 +78,7 @@ def trace(house: House, zenith_deg: Floats, azimuth_deg: Floats, *, horizon: Hil
         np.concatenate([azimuth[day], grid.azimuth_deg]),
     )
     visible = (90.0 - zenith[day] > hill_height(horizon, azimuth[day])) if horizon else np.ones(len(day))
-    roof = gable_light(house, rays)
+    roof: RoofLight = arch_light(house, rays) if house.form == "arch" else gable_light(house, rays)
     return Paths(house, len(zenith), day, np.asarray(visible, dtype=float), grid, roof, horizon)
 
 

@@ -1,0 +1,88 @@
+"""Sums over many incidences as small matrices.
+
+What a sheet passes is a smooth function of c = cos(incidence). Written as a polynomial through Chebyshev
+nodes (barycentric form; Berrut & Trefethen 2004, SIAM Review 46:501), a weighted sum of f(c) over any number
+of points is one row of weights per direction, and a sum of f(c0) g(c1) is one row of products. 14 nodes read
+clear sheets within 1e-5 (1e-4 for products on 10 x 10) except within .01 of grazing, where next to no light
+passes. The weights of a direction add up to what a perfectly clear sheet would pass.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from canopy.sheettable import SheetTable, place
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+SINGLE, DOUBLE = 14, 10
+
+
+def _nodes(count: int) -> tuple[Floats, Floats]:
+    """Chebyshev nodes of the first kind on 0..1 and their barycentric weights."""
+    angle = np.pi * (2.0 * np.arange(count) + 1.0) / (2.0 * count)
+    return 0.5 * (np.cos(angle) + 1.0), (-1.0) ** np.arange(count) * np.sin(angle)
+
+
+_NODES = {count: _nodes(count) for count in (SINGLE, DOUBLE)}
+_PLACES = {count: place(_NODES[count][0]) for count in _NODES}
+
+
+def at_nodes(table: Floats, count: int) -> Floats:
+    """Return a table on the even grid at the nodes, (rows, count)."""
+    return SheetTable.read(table, _PLACES[count])
+
+
+def _basis(cosine: Floats, count: int) -> Floats:
+    """Return the polynomials of all nodes at cosines, (P, count)."""
+    nodes, weights = _NODES[count]
+    gap = np.clip(cosine, 0.0, 1.0)[:, None] - nodes
+    gap[np.abs(gap) < 1e-13] = 1e-13
+    share = weights / gap
+    return np.asarray(share / share.sum(axis=1, keepdims=True))
+
+
+def _by_row(row: Ints, weight: Floats, values: Floats, rows: int) -> Floats:
+    """Sum weight x values over the points of each direction."""
+    from scipy.sparse import csr_matrix
+
+    picks = csr_matrix((weight, (row, np.arange(len(row)))), shape=(rows, len(row)))
+    return np.asarray(picks @ values, dtype=np.float64)
+
+
+def spread(row: Ints, cosine: Floats, weight: Floats, rows: int) -> Floats:
+    """Return node weights of sums of f(cosine) x weight, (rows, SINGLE)."""
+    if not len(row):
+        return np.zeros((rows, SINGLE))
+    return _by_row(row, weight, _basis(cosine, SINGLE), rows)
+
+
+@dataclass(frozen=True)
+class Pairs:
+    """Sums of f(c0) g(c1) for some directions."""
+
+    rows: Ints
+    weights: Floats  # (rows, DOUBLE * DOUBLE)
+
+    def give(self, first: Floats, second: Floats) -> Floats:
+        """Return the sums (B, rows) for f and g on the even grid, (B, grid) each."""
+        f, g = at_nodes(first, DOUBLE), at_nodes(second, DOUBLE)
+        both = (f[:, :, None] * g[:, None, :]).reshape(len(f), -1)
+        return np.asarray(both @ self.weights.T)
+
+
+def pairs(row: Ints, first: Floats, second: Floats, weight: Floats) -> Pairs:
+    """Return the node weights of points with two incidences."""
+    use = np.abs(weight) > 0.0
+    row, first, second, weight = row[use], first[use], second[use], weight[use]
+    rows, number = np.unique(row, return_inverse=True)
+    total = np.zeros((len(rows), DOUBLE * DOUBLE))
+    for start in range(0, len(row), 50_000):
+        part = slice(start, start + 50_000)
+        both = _basis(first[part], DOUBLE)[:, :, None] * _basis(second[part], DOUBLE)[:, None, :]
+        total += _by_row(number[part], weight[part], both.reshape(len(both), -1), len(rows))
+    return Pairs(rows, total)
