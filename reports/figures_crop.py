@@ -33,7 +33,6 @@ def absorbed_figure(run: Run) -> Figure:
         ),
         marks,
         340,
-        half=True,
         toggles=True,
     )
 
@@ -63,7 +62,7 @@ def leaf_light_figure(run: Run, show: Display) -> Figure:
         spec["layout"]["yaxis"]["range"] = [0, high]
     return Figure(
         "leaf-light",
-        "Light on sunlit and shaded leaves",
+        "Sunlit and shaded leaves, mean day",
         "Mean PAR absorbed per square metre of sunlit and of shaded leaf, by hour of the day over the "
         "season.",
         tuple(specs),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
@@ -17,6 +18,7 @@ from reports.display import Display, number, percent
 from reports.figures import marks_of, month_labels
 from reports.figures_bands import band_budget, band_figure, band_table, band_words
 from reports.figures_crop import absorbed_figure, leaf_light_figure
+from reports.stand_figures import brightest_day, day_figure, profile_figure
 from reports.summary import Summary
 
 
@@ -150,11 +152,25 @@ def crop(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     blocks: list[Block | Chooser | Each] = [
         Text(tuple(lead), lead=True),
         absorbed_figure(run),
-        leaf_light_figure(run, show),
         table,
+        Chooser("Leaves under"),
+        *_day(run, show),
+        leaf_light_figure(run, show),
         leaves,
     ]
     return Section("crop", "The crop", "What does the crop absorb?", tuple(blocks))
+
+
+def _day(run: Run, show: Display) -> list[Block]:
+    """Return one bright day hour by hour, and its brightest hour down the canopy."""
+    day = brightest_day(run)
+    of_day = np.flatnonzero(run.time.astype("datetime64[D]") == day)
+    noon = int(of_day[np.argmax(run.candidates[0].hourly["outside_par_umol_m2_s"][of_day])])
+    words = say.day_words(day)
+    return [
+        replace(day_figure(run, day, show), title=f"The brightest day, {words}"),
+        replace(profile_figure(run, noon, show), title=f"Down the canopy, {say.hour_words(run.time[noon])}"),
+    ]
 
 
 def absorbed_share(one: CandidateRun) -> np.ndarray[tuple[int], np.dtype[np.float64]]:
