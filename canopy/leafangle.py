@@ -78,7 +78,7 @@ class LeafFaces:
 def leaf_faces(chi: float) -> LeafFaces:
     """Return the inclinations of an ellipsoidal distribution."""
     step = 0.5 * math.pi / _NODES
-    inclination = (np.arange(_NODES) + 0.5) * step
+    inclination = (np.arange(_NODES, dtype=np.float64) + 0.5) * step
     share = inclination_density(chi, inclination)
     return LeafFaces(inclination, share / share.sum())
 

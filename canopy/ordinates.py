@@ -139,7 +139,8 @@ class Field:
 
     def meeting(self, depth: Floats) -> Floats:
         """Return diffuse light that leaves meet at one depth per canopy, per leaf area, (B, D, Z)."""
-        return np.einsum("n,bdnz->bdz", 2.0 * self.modes.weight * self.modes.meet, self._at(depth)[0])
+        weight = 2.0 * self.modes.weight * self.modes.meet
+        return np.asarray(np.einsum("n,bdnz->bdz", weight, self._at(depth)[0]))
 
     def streams(self, depth: Floats) -> tuple[Floats, Floats]:
         """Return diffuse flux downwards and upwards at one depth per canopy, (B, D, Z) each."""

@@ -159,7 +159,9 @@ def _profile_spec(found: Profile | None, per_joule: float, rate: str) -> Spec:
         "layout": layout(
             axis(f"absorbed PAR, {rate} of leaf", rangemode="tozero"),
             axis("leaf area above, m² per m² of floor", autorange="reversed"),
-            xaxis2=axis("leaves in the sun, %", overlaying="x", side="top", range=[0, 105], showgrid=False),
+            xaxis2=axis(
+                "leaves in the sun, %", overlaying="x", side="top", range=[0, 105], showgrid=False, dtick=20
+            ),
         ),
     }
 

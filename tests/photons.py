@@ -25,9 +25,9 @@ def inclination_table(chi: float) -> np.ndarray:
 
 def mean_projection(chi: float) -> np.ndarray:
     """Return the mean projection of leaves on rays at 0 ... 90 degrees from the vertical, by brute force."""
-    inclination = inclination_table(chi)
+    inclination = inclination_table(chi)[::10]
     inclination = 0.5 * (inclination[1:] + inclination[:-1])
-    turn = (np.arange(720) + 0.5) * (math.pi / 720)
+    turn = (np.arange(360) + 0.5) * (math.pi / 360)
     out = np.empty(901)
     for k in range(901):
         angle = math.radians(k / 10.0)
