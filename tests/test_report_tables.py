@@ -72,7 +72,7 @@ SIZING_CONTRACT = [
     "margin_pct",
     "boiler_kw",
 ]
-RISKY = ("=1+1", "+x", "-x", "@sum(a1)", ' =cmd|"/c calc"!a0', 'a, "quoted"', "plain")
+RISKY = ("=1+1", "+x", "-x", "@sum(a1)", '=cmd|"/c calc"!a0', 'a, "quoted"', "plain")
 
 
 @pytest.fixture(scope="module")
