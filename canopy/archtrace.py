@@ -2,8 +2,8 @@
 
 As with gables, lines towards the sun are sorted by where they cross the gutter line; between two breaks the
 sequence of arcs is fixed. The incidence changes along an arc, so every piece carries Gauss points. A line
-that crosses one arc only is linear in what the sheet passes: its weight goes to nodes of cos(incidence), and all
-hours become one matrix (`archbasis`). Lines that meet neighbouring arcs are handed on point by point.
+that crosses one arc only is linear in what the sheet passes: its weight goes to nodes of cos(incidence), and
+all hours become one matrix (`archbasis`). Lines that meet neighbouring arcs are handed on point by point.
 """
 
 from __future__ import annotations
