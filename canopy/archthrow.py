@@ -1,4 +1,4 @@
-"""Light that an arched roof throws over the valley into a span behind, off its outside or flat off its inside.
+"""Light that an arch throws over the valley into the span behind, off its outside or flat off its inside.
 
 Slopes and heights are angles in the section, as in `archbounce`. Every sample is a point of the arc with
 the span of slopes around it, so that gutters and the ends of the house cut off the right share of it.

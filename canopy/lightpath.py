@@ -139,7 +139,7 @@ class _Filler:
         beam = passed.beam[:, :days] * paths.visible
         direct = arrives[:, :days] * paths.visible
         sky = self._sky(direct, dome, hills, band)
-        kept = passed.absorbed.reshape(self.layers, bands, -1)
+        kept = passed.absorbed
         kept_beam = kept[:, :, :days] * paths.visible
         kept_dome = kept[:, :, days:] @ (grid.dome + grid.hills)
         sunny = paths.sunny

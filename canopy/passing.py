@@ -28,7 +28,7 @@ class Sheets:
 
 @dataclass(frozen=True)
 class Passed:
-    """Per unit of beam on the horizontal outside, (B, M); absorbed (L * B, M)."""
+    """Per unit of beam on the horizontal outside, (B, M); absorbed (L, B, M)."""
 
     beam: Floats  # arrives unscattered
     straight: Floats  # arrives without a bounce, scattered light included
