@@ -30,11 +30,20 @@ class _Chain:
     point: tuple[Ints, ...]
     free: tuple[Floats, ...]
     behind: tuple[Floats, ...]
+    mirrored: tuple[Floats, ...]  # weights of the same lines after the far gable end
+    one_mirrored: Pairs
 
-    def give(self, out: Floats, first: Floats, table: Floats, gable: Floats) -> None:
-        """Add the chain's light to out (B, M); `first` is a table for the own arc, `table` for neighbours."""
+    def give(
+        self, out: Floats, first: Floats, table: Floats, gable: Floats, mirrored: Floats | None = None
+    ) -> None:
+        """Add the chain's light to out (B, M); `first` is a table for the own arc, `table` for neighbours.
+
+        The light of the same lines after the far gable end is added to `mirrored`.
+        """
         if len(self.one.rows):
             out[:, self.one.rows] += self.one.give(first, table * table)
+        if mirrored is not None and len(self.one_mirrored.rows):
+            mirrored[:, self.one_mirrored.rows] += self.one_mirrored.give(first, table * table)
         if len(self.one_behind.rows):
             out[:, self.one_behind.rows] += (
                 self.one_behind.give(first, table) * gable[:, self.one_behind.rows]
@@ -44,17 +53,21 @@ class _Chain:
         read = SheetTable.read
         light = read(first, self.places[0]) * read(table, self.places[1]) ** 2
         total = np.zeros_like(light)
-        for place_i, point, free, behind in zip(
-            self.places[2:], self.point, self.free, self.behind, strict=True
-        ):
+        after = np.zeros_like(light) if mirrored is not None else None
+        steps = zip(self.places[2:], self.point, self.free, self.behind, self.mirrored, strict=True)
+        for place_i, point, free, behind, again in steps:
             once = read(table, place_i)
             light_i = light[:, point] * once
             term = light_i * once
             light[:, point] = term
             total[:, point] += term * free
+            if after is not None:
+                after[:, point] += term * again
             if behind.any():
                 total[:, point] += light_i * behind * gable[:, self.row[point]]
         out[:, self.rows] += np.add.reduceat(total, self.starts, axis=1)
+        if mirrored is not None and after is not None:
+            mirrored[:, self.rows] += np.add.reduceat(after, self.starts, axis=1)
 
 
 def _chain(passes: Passes, *, mirrored: bool = False) -> _Chain:
@@ -62,12 +75,14 @@ def _chain(passes: Passes, *, mirrored: bool = False) -> _Chain:
     if not passes.point:
         nobody, none = np.zeros(0, dtype=np.int64), np.zeros(0)
         empty = pairs(nobody, none, none, none)
-        return _Chain(empty, empty, nobody, nobody, nobody, (), (), (), ())
-    free = passes.mirrored if mirrored else passes.free
+        return _Chain(empty, empty, nobody, nobody, nobody, (), (), (), (), (), empty)
+    free = passes.free
     first = passes.point[0]
     row, own, near = passes.row[first], passes.cosine[0][first], passes.cosine[1]
     one = pairs(row, own, near, free[0])
-    one_behind = pairs(row, own, near, np.zeros_like(free[0]) if mirrored else passes.behind[0])
+    one_behind = pairs(row, own, near, passes.behind[0])
+    after = passes.mirrored if mirrored else tuple(np.zeros_like(f) for f in free)
+    one_mirrored = pairs(row, own, near, after[0])
     more = passes.point[1] if len(passes.point) > 1 else np.zeros(0, dtype=np.int64)
     # points by direction, of those alone that meet more than one neighbour
     order = more[np.argsort(passes.row[more], kind="stable")]
@@ -82,8 +97,10 @@ def _chain(passes: Passes, *, mirrored: bool = False) -> _Chain:
         *(place(c) for c in passes.cosine[2:]),
     )
     point = tuple(number[p] for p in passes.point[1:])
-    late = tuple(np.zeros_like(f) for f in free[1:]) if mirrored else passes.behind[1:]
-    return _Chain(one, one_behind, rows, starts, passes.row[order], places, point, free[1:], late)
+    return _Chain(
+        one, one_behind, rows, starts, passes.row[order], places, point, free[1:], passes.behind[1:], after[1:],
+        one_mirrored,
+    )  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -95,12 +112,23 @@ class _Kind:
     wall: Floats
     gable: Floats
 
-    def give(self, roof: Floats, wall: Floats, gable: Floats) -> Floats:
-        """Return the light (B, M) for a roof table on the even grid and read values of the upright faces."""
-        out = at_nodes(roof, SINGLE) @ self.single.T
+    def give(
+        self, roof: Floats, wall: Floats, gable: Floats, after: _Kind | None = None
+    ) -> tuple[Floats, Floats]:
+        """Return the light (B, M) for a roof table on the even grid and read values of the upright faces.
+
+        The second array is the light of `after`, the same lines after the far gable end.
+        """
+        nodes = at_nodes(roof, SINGLE)
+        out = np.asarray(nodes @ self.single.T)
         out += wall * self.wall + gable * self.gable
-        self.chain.give(out, roof, roof, gable)
-        return np.asarray(out)
+        if after is None:
+            self.chain.give(out, roof, roof, gable)
+            return out, out
+        mirrored = np.asarray(nodes @ after.single.T)
+        mirrored += wall * after.wall
+        self.chain.give(out, roof, roof, gable, mirrored)
+        return out, mirrored
 
 
 def _kind(ways: Ways, *, mirrored: bool = False) -> _Kind:
@@ -195,16 +223,15 @@ class ArchLight:
         read = SheetTable.read
         wall = read(sheets.wall.total, self.wall) * self.open_wall
         gable = read(sheets.gable.total, self.gable) * self.open_gable
-        straight = self.straight.give(sheets.roof.total, wall, gable)
+        straight, on_gable = self.straight.give(sheets.roof.total, wall, gable, self.far_gable)
         beam = straight
         if sheets.hazy:
-            beam = self.straight.give(
+            beam, _ = self.straight.give(
                 sheets.roof.beam,
                 read(sheets.wall.beam, self.wall) * self.open_wall,
                 read(sheets.gable.beam, self.gable) * self.open_gable,
             )
-        on_wall = self.far_wall.give(sheets.roof.total, wall, gable)
-        on_gable = self.far_gable.give(sheets.roof.total, wall, gable)
+        on_wall, _ = self.far_wall.give(sheets.roof.total, wall, gable)
         bounce = on_wall * read(sheets.wall.reflect, self.wall)
         bounce += on_gable * read(sheets.gable.reflect, self.gable)
         self._roof_bounce(bounce, sheets, gable)
@@ -252,8 +279,8 @@ def arch_light(house: House, rays: Rays) -> ArchLight:
     inside = InnerWays(inside.nodes[rows], inside.gable[rows], inside.passes, inside.back[rows])
     open_wall = bars_open(house, rays.across, rays.along)
     open_gable = bars_open(house, rays.along, rays.across)
-    kind = _kind(straight)
-    sunny = kind.give(np.ones((1, STEPS + 1)), open_wall[None], open_gable[None])[0]
+    kind = _kind(straight, mirrored=True)
+    sunny = kind.give(np.ones((1, STEPS + 1)), open_wall[None], open_gable[None])[0][0]
     lit, shaded = _lit(arc, rays)
     return ArchLight(
         wall=place(rays.across),
@@ -262,7 +289,7 @@ def arch_light(house: House, rays: Rays) -> ArchLight:
         open_gable=open_gable,
         straight=kind,
         far_wall=_kind(far_wall),
-        far_gable=_kind(far_gable, mirrored=True),
+        far_gable=_Kind(far_gable.single, kind.chain, far_gable.wall, far_gable.gable),
         inner_rows=rows,
         inner=inside,
         inner_chain=chain,

