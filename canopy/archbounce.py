@@ -17,7 +17,7 @@ from canopy.archtrace import Arc, Passes, Points, Sums, crossings, follow, secti
 from canopy.house import House
 from canopy.rays import Floats, Rays
 
-INNER_POINTS = 32
+INNER_POINTS = 40
 
 
 @dataclass(frozen=True)

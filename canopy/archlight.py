@@ -98,8 +98,8 @@ def _chain(passes: Passes, *, mirrored: bool = False) -> _Chain:
     )
     point = tuple(number[p] for p in passes.point[1:])
     return _Chain(
-        one, one_behind, rows, starts, passes.row[order], places, point, free[1:], passes.behind[1:], after[1:],
-        one_mirrored,
+        one, one_behind, rows, starts, passes.row[order], places, point, free[1:], passes.behind[1:],
+        after[1:], one_mirrored,
     )  # fmt: skip
 
 

@@ -16,7 +16,7 @@ from canopy.house import House
 from canopy.rays import Bools, Floats, Ints, Rays
 from canopy.structure import bars_open
 
-THROWN_POINTS = 14
+THROWN_POINTS = 24
 
 
 @dataclass(frozen=True)
