@@ -20,7 +20,7 @@ from canopy.houselight import inside
 from canopy.light import HouseTransmission, Light, StandResponse, SunBands
 from canopy.lightpath import Paths, trace, transmit
 from canopy.optics import Covering, Ground, Leaf, Screen, SolarOptics
-from canopy.plans import make_heating, make_house, make_shell
+from canopy.plans import DEFAULT_LAI, make_heating, make_house, make_shell
 from canopy.rows import Rows
 from canopy.screenrules import screens_of
 from canopy.seasonal import parse
@@ -35,7 +35,6 @@ from weather.site import civil_hours, day_of_year
 
 Floats = NDArray[np.float64]
 
-DEFAULT_LAI = 3.0  # a grown, trained crop: common practice
 WATER_KG_PER_LAI = 2.0  # kg water per m2 leaf, stems and fruit included: tall fruit crops 4-8 kg/m2 at LAI 3
 
 

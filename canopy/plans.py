@@ -9,6 +9,7 @@ from canopy.house import House
 from canopy.optics import Covering
 from canopy.studyfile import Plan
 
+DEFAULT_LAI: Final = 3.0  # a grown, trained crop: common practice
 DEFAULT_PITCH_DEG: Final = 24.0  # common practice for multi-span glasshouses (22-26)
 
 LEAKAGE_PER_H: Final[dict[tuple[str, bool], float]] = {

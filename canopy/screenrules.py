@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any, Final, Literal
 
 from canopy import library
+from canopy.library_rows import table
 from canopy.seasonal import day_number
 from canopy.studykeys import ScreenKeys
 from weather.errors import UserError
@@ -36,14 +37,19 @@ def check_rule(keys: ScreenKeys, purpose: str, where: str) -> None:
 
 def screens_of(plan: Plan, study: Study) -> tuple[tuple[Screen, ...], tuple[ScreenRule, ...]]:
     """Return the screens of a candidate, outermost first, with their rules."""
-    own = {keys.name: keys for keys in study.keys.screen}
-    screens, rules = [], []
-    for name in plan.screens:
-        keys = own.get(name)
-        screen = library.screen(name if keys is None else keys.based_on)
-        screens.append(screen)
-        rules.append(_rule(keys, screen.kind))
-    return tuple(screens), tuple(rules)
+    screens = tuple(library.screen(_based_on(name, study)) for name in plan.screens)
+    return screens, tuple(screen_rule(name, study) for name in plan.screens)
+
+
+def _based_on(name: str, study: Study) -> str:
+    keys = next((keys for keys in study.keys.screen if keys.name == name), None)
+    return name if keys is None else keys.based_on
+
+
+def screen_rule(name: str, study: Study) -> ScreenRule:
+    """Return the rule by which a screen of the study, or one of the library, is drawn (light to import)."""
+    keys = next((keys for keys in study.keys.screen if keys.name == name), None)
+    return _rule(keys, table("screen", _based_on(name, study))["kind"])
 
 
 def _rule(keys: ScreenKeys | None, purpose: Purpose) -> ScreenRule:

@@ -23,7 +23,17 @@ def day_number(text: object) -> int:
         month, day = int(hit[1]), int(hit[2])
         if 1 <= month <= 12 and 1 <= day <= _MONTH_DAYS[month - 1]:
             return sum(_MONTH_DAYS[: month - 1]) + day
-    raise ValueError(f'{text!r} is no day of the year; write "MM-DD", 01-01 to 12-31 without 02-29')
+    shown = repr(text)[:40]
+    raise ValueError(f'{shown} is no day of the year; write "MM-DD", 01-01 to 12-31 without 02-29')
+
+
+def day_text(day: int) -> str:
+    """Return "MM-DD" of a day (1-365) of a non-leap year."""
+    month = 0
+    while day > _MONTH_DAYS[month]:
+        day -= _MONTH_DAYS[month]
+        month += 1
+    return f"{month + 1:02d}-{day:02d}"
 
 
 @dataclass(frozen=True)
@@ -37,13 +47,14 @@ class Seasonal:
         """Return (N,) values that hold from their date until the next; the year wraps round."""
         values = np.asarray(self.values)
         at = np.searchsorted(np.asarray(self.days), np.minimum(np.floor(day_of_year), 365), side="right") - 1
-        return values[at]  # -1 wraps to the last date of the year before
+        return np.asarray(values[at], dtype=np.float64)  # -1 wraps to the last date of the year before
 
     def linear(self, day_of_year: Floats) -> Floats:
         """Return (N,) values straight between dates; the year wraps round."""
         if len(self.days) == 1:
             return np.full(np.shape(day_of_year), self.values[0])
-        return np.interp(np.asarray(day_of_year, float), self.days, self.values, period=365.0)
+        line = np.interp(np.asarray(day_of_year, float), self.days, self.values, period=365.0)
+        return np.asarray(line, dtype=np.float64)
 
 
 def parse(raw: object, low: float, high: float) -> Seasonal:
@@ -60,10 +71,12 @@ def parse(raw: object, low: float, high: float) -> Seasonal:
         if not (isinstance(pair, list) and len(pair) == 2):
             raise ValueError('write a number or [["MM-DD", number], ...]')
         value = pair[1]
-        if isinstance(value, bool) or not isinstance(value, int | float) or not np.isfinite(value):
-            raise ValueError(f'{value!r} is not a number; write a number or [["MM-DD", number], ...]')
+        if isinstance(value, bool) or not isinstance(value, int | float) or value != value:
+            shown = repr(value)[:40]
+            raise ValueError(f'{shown} is not a number; write a number or [["MM-DD", number], ...]')
         if not low <= value <= high:
-            raise ValueError(f"{value:g} is outside {low:g} to {high:g}")
+            shown = f"{value:g}" if isinstance(value, float) else str(value)[:20]
+            raise ValueError(f"{shown} is outside {low:g} to {high:g}")
         days.append(day_number(pair[0]))
         values.append(float(value))
     if not days or any(b <= a for a, b in pairwise(days)):

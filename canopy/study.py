@@ -8,9 +8,10 @@ from __future__ import annotations
 from functools import partial
 from itertools import pairwise
 from typing import Annotated, Any, Literal
+from unicodedata import category
 from zoneinfo import ZoneInfo, available_timezones
 
-from pydantic import BeforeValidator, Field, field_validator, model_validator
+from pydantic import AfterValidator, BeforeValidator, Field, field_validator, model_validator
 
 from canopy.energykeys import HeatPumpKeys, StoreKeys, TariffKeys
 from canopy.fuel import fuel_names
@@ -23,15 +24,35 @@ def _seasonal(low: float, high: float) -> Any:
     return BeforeValidator(partial(parse, low=low, high=high))
 
 
-def _day(raw: object) -> object:
-    if raw is not None:
-        day_number(raw)
-    return raw
+class _DayOfYear:
+    """A day "MM-DD" or nothing."""
+
+    words = 'a day "MM-DD", 01-01 to 12-31 without 02-29'
+
+    def __call__(self, raw: object) -> object:
+        """Return the text after its check; ValueError for what is no day."""
+        if raw is not None:
+            day_number(raw)
+        return raw
 
 
-Day = Annotated[str | None, BeforeValidator(_day)]
+def _plain(text: str) -> str:
+    """Return a text without signs that cannot be seen and without space at its ends, or raise ValueError."""
+    if text != text.strip():
+        raise ValueError("begins or ends with a space; remove it")
+    for sign in text:
+        if category(sign) in ("Cc", "Cf", "Cs", "Zl", "Zp") and sign not in _JOINERS:
+            raise ValueError(f"holds the sign U+{ord(sign):04X}, which cannot be seen; remove it")
+    return text
+
+
+_JOINERS = "\u200c\u200d"  # some scripts need them
+
+Day = Annotated[str | None, BeforeValidator(_DayOfYear())]
 Temperature = Annotated[Seasonal, _seasonal(-60, 60)]
-Name = Annotated[str, Field(min_length=1, max_length=60, pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")]
+Name = Annotated[str, Field(min_length=1, max_length=60), AfterValidator(_plain)]
+Title = Annotated[str, Field(min_length=1, max_length=120), AfterValidator(_plain)]
+FileName = Annotated[str, Field(min_length=1, max_length=1000), AfterValidator(_plain)]
 Hour = Annotated[float, Field(ge=0, le=24)]
 
 
@@ -41,7 +62,7 @@ class SiteKeys(Section):
     latitude: Annotated[float, Field(ge=-66.5, le=72)] | None = None
     longitude: Annotated[float, Field(ge=-180, le=180)] | None = None
     elevation: Annotated[float, Field(ge=-430, le=5000)] | None = None
-    timezone: str | None = None
+    timezone: Name | None = None
     horizon: list[list[float]] = []
 
     @field_validator("timezone")
@@ -60,7 +81,7 @@ class SiteKeys(Section):
     def _horizon(cls, points: list[list[float]]) -> list[list[float]]:
         for point in points:
             if len(point) != 2 or not (0 <= point[0] <= 360 and 0 <= point[1] <= 60):
-                raise ValueError(f"{point} is no [azimuth 0-360, elevation 0-60] in degrees")
+                raise ValueError(f"{str(point)[:40]} is no [azimuth 0-360, elevation 0-60] in degrees")
         if any(b[0] <= a[0] for a, b in pairwise(points)):
             raise ValueError("azimuths must rise")
         return points
@@ -75,9 +96,9 @@ class SiteKeys(Section):
 class WeatherKeys(Section):
     """[weather]: exactly one source."""
 
-    file: str | None = None
-    files: list[str] = []
-    shipped: str | None = None
+    file: FileName | None = None
+    files: Annotated[list[FileName], Field(max_length=100)] = []
+    shipped: Name | None = None
     clear_sky: bool = False
     longwave: Literal["file", "model"] | None = None
     first_day: Day = None
@@ -144,10 +165,10 @@ class HouseKeys(Section):
             if len(row) != 3 or not all(
                 isinstance(x, int | float) and not isinstance(x, bool) for x in row[1:]
             ):
-                raise ValueError(f'{row} is no ["MM-DD", shade 0-0.9, wear-off days]')
+                raise ValueError(f'{str(row)[:60]} is no ["MM-DD", shade 0-0.9, wear-off days]')
             day_number(row[0])
             if not (0 <= row[1] <= 0.9 and 1 <= row[2] <= 400):
-                raise ValueError(f"{row}: shade lies in 0-0.9, wear-off in 1-400 days")
+                raise ValueError(f"{str(row)[:60]}: shade lies in 0-0.9, wear-off in 1-400 days")
         return rows
 
     @model_validator(mode="after")
@@ -251,4 +272,6 @@ class HeatingKeys(Section):
             raise ValueError("price_per_kwh and the table tariff exclude each other")
         if self.heat_pump_tariff is not None and self.heat_pump is None:
             raise ValueError("heat_pump_tariff needs the table heat_pump")
+        if self.min_pipe_c is not None and self.min_pipe_c > self.flow_max_c:
+            raise ValueError(f"min_pipe_c {self.min_pipe_c:g} exceeds flow_max_c {self.flow_max_c:g}")
         return self

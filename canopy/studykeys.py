@@ -11,12 +11,14 @@ from canopy.study import (
     ClimateKeys,
     CropKeys,
     Day,
+    FileName,
     HeatingKeys,
     Hour,
     HouseKeys,
     Name,
     Section,
     SiteKeys,
+    Title,
     WeatherKeys,
 )
 
@@ -43,6 +45,8 @@ class ScreenKeys(Section):
             raise ValueError("from_hour and until_hour stand together or not at all")
         if (self.first_day is None) != (self.last_day is None):
             raise ValueError("first_day and last_day stand together or not at all")
+        if self.from_hour is not None and self.from_hour == self.until_hour:
+            raise ValueError("from_hour equals until_hour: never drawn; write 0 and 24 for the whole day")
         return self
 
 
@@ -56,7 +60,7 @@ class CoveringKeys(Section):
     haze: Share | None = None
     thermal_transmittance: Share | None = None
     u_value: Annotated[float, Field(gt=0.2, le=10)] | None = None
-    spectrum: str | None = None
+    spectrum: FileName | None = None
     thickness_mm: Annotated[float, Field(gt=0.005, le=100)] | None = None
     age_years: Annotated[float, Field(ge=0, le=40)] = 0.0
     wet: Literal["film", "drops", "none"] | None = None
@@ -99,7 +103,7 @@ class CandidateKeys(Section):
 
     name: Name
     covering: Name
-    screens: list[Name] = Field(default=[], max_length=2)
+    screens: Annotated[list[Name], Field(max_length=2)] = []
     house: dict[str, Any] = {}
     crop: dict[str, Any] = {}
     climate: dict[str, Any] = {}
@@ -109,7 +113,7 @@ class CandidateKeys(Section):
 class StudyKeys(Section):
     """The whole file."""
 
-    title: Annotated[str, Field(min_length=1, max_length=120)] = "Study"
+    title: Title = "Study"
     units: Literal["si", "us"] = "si"
     site: SiteKeys = SiteKeys()
     weather: WeatherKeys
@@ -119,4 +123,4 @@ class StudyKeys(Section):
     heating: HeatingKeys = HeatingKeys()
     screen: list[ScreenKeys] = []
     covering: list[CoveringKeys] = []
-    candidate: list[CandidateKeys] = Field(min_length=1, max_length=24)
+    candidate: Annotated[list[CandidateKeys], Field(min_length=1, max_length=24)]

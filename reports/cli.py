@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import errno
+import os
+import signal
 import sys
 import traceback
 from pathlib import Path
-from typing import Annotated
+from typing import Annotated, Any
 
 import typer
 
@@ -17,20 +20,35 @@ app = typer.Typer(
 
 StudyFile = Annotated[Path, typer.Argument(help="Study file (TOML).", show_default=False)]
 OutFolder = Annotated[
-    Path, typer.Option("--out", "-o", help="Folder for report, workbook and tables.", show_default=False)
+    str,
+    typer.Option(
+        "--out",
+        "-o",
+        help="Folder for report, workbook and tables; made if absent.",
+        metavar="FOLDER",
+        show_default=False,
+    ),
 ]
 
 
-@app.callback()
+def _folder(out: str) -> Path:
+    if not out.strip():
+        raise UserError('--out: is empty; name a folder, "." for this one')
+    return Path(out)
+
+
+HELP = (
+    "Light and heat of a crop under glass or film, hour by hour through a season.\n\n"
+    "Compares coverings and screens for one place and one crop: PAR and NIR that reach and are absorbed by "
+    "the crop, what the night sky takes, what the heating must deliver.\n\n"
+    "Start with [bold]canopy-budget new my.toml[/bold], look with [bold]check[/bold], compute with "
+    "[bold]run[/bold]; or see a finished example with [bold]demo[/bold]."
+)
+
+
+@app.callback(help=HELP)
 def _root() -> None:
-    """Light and heat of a crop under glass or film, hour by hour through a season.
-
-    Compares coverings and screens for one place and one crop: PAR and NIR that reach and are absorbed
-    by the crop, what the night sky takes, what the heating must deliver.
-
-    Start with [bold]canopy-budget new my.toml[/bold], look with [bold]check[/bold], compute with
-    [bold]run[/bold]; or see a finished example with [bold]demo[/bold].
-    """
+    """Hold the commands together."""
 
 
 @app.command()
@@ -38,7 +56,7 @@ def demo(out: OutFolder) -> None:
     """Compute the example: five coverings for a tomato house on a real weather year."""
     from reports.commands import run_demo
 
-    run_demo(out)
+    run_demo(_folder(out))
 
 
 @app.command()
@@ -53,7 +71,7 @@ def new(file: Annotated[Path, typer.Argument(help="Where to write it.", show_def
 @app.command()
 def check(file: StudyFile) -> None:
     """Read a study and say in a few lines what will be computed."""
-    from reports.studyfiles import check_text
+    from reports.check_view import check_text
 
     typer.echo(check_text(file))
 
@@ -63,7 +81,7 @@ def run(file: StudyFile, out: OutFolder) -> None:
     """Compute a study: report.html, workbook.xlsx, CSV tables and run.json in one folder."""
     from reports.commands import run_study
 
-    run_study(file, out)
+    run_study(file, _folder(out))
 
 
 @app.command()
@@ -119,21 +137,62 @@ def bands(
     typer.echo(bands_text(temperature, edges))
 
 
+STOPPED = 130
+CLOSED_PIPE = 141  # as a shell says it of a program whose reader went away
+
+
 def main() -> None:
-    """Run the command line: exit code 0 done, 2 bad input, 1 a fault of this program."""
+    """Run the command line: exit code 0 done, 2 bad input, 1 a fault of this program, 130 stopped."""
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):  # names that the terminal cannot show come out as "?"
+            stream.reconfigure(errors="replace")
+    signal.signal(signal.SIGTERM, _stop)
+    sys.exit(_code(sys.argv[1:] or ["--help"]))
+
+
+def _stop(*_: object) -> None:
+    raise KeyboardInterrupt
+
+
+def _code(args: list[str]) -> int:
+    """Return the exit code of one command; every fault is said in one line."""
     try:
-        app()
+        done = app(args, standalone_mode=False)
+        if sys.stdout is not None:
+            sys.stdout.flush()
+        if done == STOPPED:
+            raise KeyboardInterrupt
     except UserError as error:
-        print(f"canopy-budget: {error}", file=sys.stderr)
-        sys.exit(2)
+        return _say(str(error), 2)
     except OpenHourError as error:
-        print(f"canopy-budget: no report: {error}", file=sys.stderr)
-        sys.exit(1)
-    except KeyboardInterrupt:
-        print("canopy-budget: stopped; nothing was written", file=sys.stderr)
-        sys.exit(130)
+        return _say(f"no report: {error}", 1)
+    except (KeyboardInterrupt, typer.Abort):
+        return _say("stopped; nothing was written", STOPPED)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return CLOSED_PIPE
+    except SystemExit as end:  # the command line library says so of a reader that went away
+        return CLOSED_PIPE if end.code == 1 else int(end.code or 0)
     except Exception as error:
+        if hasattr(error, "format_message"):  # the command line itself: unknown command or option
+            return _say(_usage(error), 2)
+        if isinstance(error, OSError) and error.errno == errno.ENOSPC:
+            return _say("what this prints cannot be written: no space left", 2)
         traceback.print_exc()
-        kind = type(error).__name__
-        print(f"canopy-budget: this is a bug ({kind}), not your input; nothing was written", file=sys.stderr)
-        sys.exit(1)
+        return _say(f"this is a bug ({type(error).__name__}), not your input; nothing was written", 1)
+    return 0
+
+
+def _usage(error: Any) -> str:
+    context = getattr(error, "ctx", None)
+    path = context.command_path if context is not None else "canopy-budget"
+    inner = path.partition(" ")[2]
+    said = error.format_message().rstrip(".")
+    return f"{inner + ': ' if inner else ''}{said[:1].lower()}{said[1:]}; see canopy-budget {inner} --help"
+
+
+def _say(text: str, code: int) -> int:
+    """Print one line that a terminal can show, and return the exit code."""
+    line = "".join(sign if sign.isprintable() else " " for sign in text)
+    print(f"canopy-budget: {' '.join(line.split())}", file=sys.stderr)
+    return code
