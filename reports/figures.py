@@ -26,7 +26,7 @@ DASHES: Final = ("solid", "dash", "dot")
 SYMBOLS: Final = ("circle", "square", "diamond", "triangle-up", "cross", "star", "triangle-down", "hexagon")
 SYMBOL_SIGNS: Final = {
     "circle": "●", "square": "■", "diamond": "◆", "triangle-up": "▲", "cross": "✚", "star": "★",
-    "triangle-down": "▼", "hexagon": "⬢",
+    "triangle-down": "▼", "hexagon": "⬢", "none": "",
 }  # fmt: skip
 
 HATCHES: Final = {"/": "slash", "\\": "back", ".": "dots", "x": "cross", "+": "plus", "-": "dash"}
@@ -159,10 +159,9 @@ def bar(mark: Mark, labels: Sequence[str], values: Floats, unit: str, digits: in
 
 
 def month_labels(months: Sequence[str]) -> list[str]:
-    """Return "Jan", or "Jan 91" when the months come from more than one calendar year."""
+    """Return "Jan", or "Jan 91" when a month comes more than once."""
     names = ("Jan", "Feb", "Mar", "Apr", "May", "Jun", "Jul", "Aug", "Sep", "Oct", "Nov", "Dec")
-    years = {month[:4] for month in months}
-    tail = len(years) > 1
+    tail = len({month[5:7] for month in months}) < len(months)
     return [names[int(m[5:7]) - 1] + (f" {m[2:4]}" if tail else "") for m in months]
 
 

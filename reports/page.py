@@ -27,6 +27,7 @@ from reports import (
 from reports.blocks import Section
 from reports.display import Display
 from reports.figures import HATCHES, SYMBOL_SIGNS, marks_of
+from reports.season import in_order
 from reports.sentences import period
 from reports.summary import summaries
 
@@ -53,6 +54,7 @@ def json_for_script(value: Any) -> Markup:
 
 def sections_of(run: Run) -> tuple[Section, ...]:
     """Return every section of the report, in order."""
+    run = in_order(run)
     rows, show = summaries(run), Display(run.study.keys.units)
     found = (
         sections_choice.which(run, rows, show),

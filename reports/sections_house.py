@@ -13,6 +13,7 @@ from reports import sentences as say
 from reports.blocks import Block, Chooser, Each, Figure, Row, Section, Table, Text
 from reports.display import NONE, Display, number, percent
 from reports.figures import axis, layout, line, marks_of, month_labels
+from reports.figures_sky import sky_figure, turn_rows, turn_words, turned
 from reports.summary import Summary
 
 Floats = NDArray[np.float64]
@@ -82,6 +83,14 @@ def house_light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     if labels:
         blocks += [height_figure(run, labels, shares), _height_table(run, rows, labels, shares)]
     blocks.append(_month_table(run, rows))
+    table = turned(run)
+    ridge = run.candidates[0].house.ridge_azimuth
+    blocks += [
+        Chooser("Sky over"),
+        sky_figure(run),
+        Text((turn_words(table, rows[0].name, ridge),)),
+        turn_rows(table, rows[0].name),
+    ]
     return Section("house", "Light in the house", "What does the house do to the light?", tuple(blocks))
 
 

@@ -13,6 +13,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from canopy.columns import LOSSES, STORES
+from canopy.ledger import by_group, groups, season
 from canopy.optics import Screen
 from canopy.run import Run
 from reports import sentences as say
@@ -37,6 +38,7 @@ from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
 from reports.nights import find_nights, night_pattern
 from reports.savings import LOSS_PATHS, saving
+from reports.season import in_order
 from reports.sections_size import peaks_as_screens_open
 from reports.summary import beaten, house_differences, summaries
 from reports.terminal import StageLine, plain, progress, result_table, show
@@ -135,7 +137,29 @@ def test_periods_in_words(run: Run) -> None:
 
 def test_months_of_several_years_carry_their_year() -> None:
     assert month_labels(("1990-01", "1990-02")) == ["Jan", "Feb"]
-    assert month_labels(("2019-12", "2020-01")) == ["Dec 19", "Jan 20"]
+    assert month_labels(("1989-12", "1990-01")) == ["Dec", "Jan"]
+    assert month_labels(("2019-12", "2020-01", "2020-12")) == ["Dec 19", "Jan 20", "Dec 20"]
+
+
+def test_a_season_over_the_new_year_begins_in_autumn() -> None:
+    file_order = make_run(fakes(2), months=(1, 2, 10, 11, 12))
+    run = in_order(file_order)
+    assert run.months == ("1989-10", "1989-11", "1989-12", "1990-01", "1990-02")
+    assert (np.diff(run.days.astype(int)) == 1).all()
+    assert (np.diff(run.time.astype(int)) == 3600).all()
+    for old, new in zip(file_order.candidates, run.candidates, strict=True):
+        for name, values in by_group(new.hourly, groups(run.time, "D")[1], 3600.0).items():
+            np.testing.assert_array_equal(values, new.daily[name])
+        assert season(new.hourly, 3600.0) == pytest.approx(season(old.hourly, 3600.0))
+        assert new.monthly["heat_delivered_kwh_m2"][0] == old.monthly["heat_delivered_kwh_m2"][2]
+    assert (run.weather.temp_air[run.hours] == run.candidates[0].hourly["outside_temp_c"]).all()
+    assert say.period(run) == say.period(file_order) == "from 1 October to 28 February"
+
+
+def test_other_seasons_stay_as_they_are(run: Run) -> None:
+    assert in_order(run) is run
+    spring = make_run(fakes(1), months=(4, 5))
+    assert in_order(spring) is spring
 
 
 def test_nights_are_parted_by_how_clear_they_are(run: Run) -> None:
