@@ -10,6 +10,7 @@ passes. The weights of a direction add up to what a perfectly clear sheet would 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -73,6 +74,35 @@ class Pairs:
         f, g = at_nodes(first, DOUBLE), at_nodes(second, DOUBLE)
         both = (f[:, :, None] * g[:, None, :]).reshape(len(f), -1)
         return np.asarray(both @ self.weights.T)
+
+    def add(self, out: Floats, first: Floats, second: Floats, factor: Floats | None = None) -> None:
+        """Add the sums, times a factor per direction (B, M), to out (B, M)."""
+        if len(self.rows):
+            light = self.give(first, second)
+            out[:, self.rows] += light if factor is None else light * factor[:, self.rows]
+
+
+@dataclass(frozen=True)
+class RowSums:
+    """Weighted sums of values given point by point, for some directions."""
+
+    rows: Ints
+    weights: Any  # (rows, points), sparse
+
+    def add(self, out: Floats, values: Floats, factor: Floats | None = None) -> None:
+        """Add the sums of values (B, points), times a factor per direction (B, M), to out (B, M)."""
+        if len(self.rows):
+            total = np.asarray(self.weights @ np.ascontiguousarray(values.T)).T
+            out[:, self.rows] += total if factor is None else total * factor[:, self.rows]
+
+
+def row_sums(row: Ints, weight: Floats) -> RowSums:
+    """Return the sums over points of each direction; points without weight are left out."""
+    from scipy.sparse import csr_matrix
+
+    use = np.flatnonzero(np.abs(weight) > 0.0)
+    rows, number = np.unique(row[use], return_inverse=True)
+    return RowSums(rows, csr_matrix((weight[use], (number, use)), shape=(len(rows), len(row))))
 
 
 def pairs(row: Ints, first: Floats, second: Floats, weight: Floats) -> Pairs:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from canopy.archbasis import SINGLE, Pairs, at_nodes, pairs, spread
+from canopy.archbasis import SINGLE, Pairs, RowSums, at_nodes, pairs, row_sums, spread
 from canopy.archbounce import InnerWays, inner
 from canopy.archthrow import ThrownWays, outer, outer_front, through
 from canopy.archtrace import Arc, Passes, Ways, arc_of, section_height, trace_straight
@@ -18,20 +18,26 @@ from canopy.structure import bars_open
 
 
 @dataclass(frozen=True)
+class _Step:
+    """One more neighbour: the first `count` points of the chain reach it."""
+
+    count: int
+    where: Place
+    free: RowSums
+    behind: RowSums
+    mirrored: RowSums
+
+
+@dataclass(frozen=True)
 class _Chain:
     """Lines that meet neighbours: those that meet one as products, the others point by point."""
 
     one: Pairs  # own arc x (neighbour)^2
     one_behind: Pairs  # own arc x neighbour x gable end
-    rows: Ints  # directions in which lines meet more than one
-    starts: Ints  # where each one's points start
-    row: Ints
-    places: tuple[Place, ...]
-    point: tuple[Ints, ...]
-    free: tuple[Floats, ...]
-    behind: tuple[Floats, ...]
-    mirrored: tuple[Floats, ...]  # weights of the same lines after the far gable end
-    one_mirrored: Pairs
+    one_mirrored: Pairs  # as `one`, of the same lines after the far gable end
+    own: Place
+    near: Place
+    steps: tuple[_Step, ...]
 
     def give(
         self, out: Floats, first: Floats, table: Floats, gable: Floats, mirrored: Floats | None = None
@@ -40,67 +46,54 @@ class _Chain:
 
         The light of the same lines after the far gable end is added to `mirrored`.
         """
-        if len(self.one.rows):
-            out[:, self.one.rows] += self.one.give(first, table * table)
-        if mirrored is not None and len(self.one_mirrored.rows):
-            mirrored[:, self.one_mirrored.rows] += self.one_mirrored.give(first, table * table)
-        if len(self.one_behind.rows):
-            out[:, self.one_behind.rows] += (
-                self.one_behind.give(first, table) * gable[:, self.one_behind.rows]
-            )
-        if not len(self.row):
+        self.one.add(out, first, table * table)
+        self.one_behind.add(out, first, table, gable)
+        if mirrored is not None:
+            self.one_mirrored.add(mirrored, first, table * table)
+        if not self.steps:
             return
         read = SheetTable.read
-        light = read(first, self.places[0]) * read(table, self.places[1]) ** 2
-        total = np.zeros_like(light)
-        after = np.zeros_like(light) if mirrored is not None else None
-        steps = zip(self.places[2:], self.point, self.free, self.behind, self.mirrored, strict=True)
-        for place_i, point, free, behind, again in steps:
-            once = read(table, place_i)
-            light_i = light[:, point] * once
-            term = light_i * once
-            light[:, point] = term
-            total[:, point] += term * free
-            if after is not None:
-                after[:, point] += term * again
-            if behind.any():
-                total[:, point] += light_i * behind * gable[:, self.row[point]]
-        out[:, self.rows] += np.add.reduceat(total, self.starts, axis=1)
-        if mirrored is not None and after is not None:
-            mirrored[:, self.rows] += np.add.reduceat(after, self.starts, axis=1)
+        light = read(first, self.own) * read(table, self.near) ** 2
+        for step in self.steps:
+            once = read(table, step.where)
+            light = light[:, : step.count] * once
+            step.behind.add(out, light, gable)
+            light *= once
+            step.free.add(out, light)
+            if mirrored is not None:
+                step.mirrored.add(mirrored, light)
 
 
 def _chain(passes: Passes, *, mirrored: bool = False) -> _Chain:
-    """Make lines that meet neighbours ready for lookups."""
+    """Make lines that meet neighbours ready for lookups, those that meet most of them first."""
     if not passes.point:
         nobody, none = np.zeros(0, dtype=np.int64), np.zeros(0)
         empty = pairs(nobody, none, none, none)
-        return _Chain(empty, empty, nobody, nobody, nobody, (), (), (), (), (), empty)
-    free = passes.free
+        return _Chain(empty, empty, empty, place(none), place(none), ())
     first = passes.point[0]
     row, own, near = passes.row[first], passes.cosine[0][first], passes.cosine[1]
-    one = pairs(row, own, near, free[0])
-    one_behind = pairs(row, own, near, passes.behind[0])
-    after = passes.mirrored if mirrored else tuple(np.zeros_like(f) for f in free)
-    one_mirrored = pairs(row, own, near, after[0])
-    more = passes.point[1] if len(passes.point) > 1 else np.zeros(0, dtype=np.int64)
-    # points by direction, of those alone that meet more than one neighbour
-    order = more[np.argsort(passes.row[more], kind="stable")]
+    after = passes.mirrored if mirrored else tuple(np.zeros_like(f) for f in passes.free)
+    depth = np.zeros(len(passes.row), dtype=np.int64)
+    for point in passes.point:
+        depth[point] += 1
+    order = np.argsort(-depth, kind="stable")[: int((depth >= 2).sum())]
     number = np.zeros(len(passes.row), dtype=np.int64)
     number[order] = np.arange(len(order))
     at_first = np.zeros(len(passes.row), dtype=np.int64)
     at_first[first] = np.arange(len(first))
-    rows, starts = np.unique(passes.row[order], return_index=True)
-    places = (
+    steps = []
+    for i, point in enumerate(passes.point[1:], start=1):
+        turn = np.argsort(number[point])
+        sums = [row_sums(passes.row[point[turn]], v[i][turn]) for v in (passes.free, passes.behind, after)]
+        steps.append(_Step(len(point), place(passes.cosine[i + 1][turn]), *sums))
+    return _Chain(
+        pairs(row, own, near, passes.free[0]),
+        pairs(row, own, near, passes.behind[0]),
+        pairs(row, own, near, after[0]),
         place(passes.cosine[0][order]),
         place(near[at_first[order]]),
-        *(place(c) for c in passes.cosine[2:]),
+        tuple(steps),
     )
-    point = tuple(number[p] for p in passes.point[1:])
-    return _Chain(
-        one, one_behind, rows, starts, passes.row[order], places, point, free[1:], passes.behind[1:],
-        after[1:], one_mirrored,
-    )  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -142,12 +135,10 @@ class _Thrown:
 
     plain: Pairs
     gable: Pairs
-    rows: Ints
-    starts: Ints
-    weight: Floats
+    sums: RowSums
     mirror: Place
     entry: Place
-    between: tuple[tuple[Ints, Place], ...]
+    between: tuple[tuple[int, Place], ...]  # how many points, counted from the first, cross one more
     beyond: tuple[tuple[Ints, Place, Floats], ...]
 
     def give(
@@ -157,39 +148,45 @@ class _Thrown:
 
         `gable`: the same table for light that came in through the gable end, and what that end passes (B, M).
         """
-        if len(self.plain.rows):
-            out[:, self.plain.rows] += self.plain.give(first, table)
-        if gable is not None and len(self.gable.rows):
-            rows = self.gable.rows
-            out[:, rows] += self.gable.give(gable[0], table) * gable[1][:, rows]
-        if not len(self.weight):
+        self.plain.add(out, first, table)
+        if gable is not None:
+            self.gable.add(out, gable[0], table, gable[1])
+        if not self.between and not self.beyond:
             return
         read = SheetTable.read
-        light = read(first, self.mirror) * read(table, self.entry) * self.weight
-        for points, where in self.between:
-            light[:, points] *= read(table, where) ** 2
-        rest = np.ones_like(light)
-        for points, where, share in self.beyond[::-1]:
-            rest[:, points] = 1.0 - share + share * read(table, where) ** 2 * rest[:, points]
-        out[:, self.rows] += np.add.reduceat(light * rest, self.starts, axis=1)
+        light = read(first, self.mirror) * read(table, self.entry)
+        for count, where in self.between:
+            light[:, :count] *= read(table, where) ** 2
+        if self.beyond:
+            rest = np.ones_like(light)
+            for points, where, share in self.beyond[::-1]:
+                rest[:, points] = 1.0 - share + share * read(table, where) ** 2 * rest[:, points]
+            light *= rest
+        self.sums.add(out, light)
 
 
 def _thrown(ways: ThrownWays) -> _Thrown:
-    """Make thrown light ready for lookups (its points come sorted by direction)."""
+    """Make thrown light ready for lookups, points that cross most neighbours first."""
+    depth = np.zeros(len(ways.row), dtype=np.int64)
     crossing = np.zeros(len(ways.row), dtype=bool)
+    for points, _ in ways.between:
+        depth[points] += 1
     for found in (*ways.between, *ways.beyond):
         crossing[found[0]] = True
-    number = np.cumsum(crossing) - 1
-    rows, starts = np.unique(ways.row[crossing], return_index=True)
+    order = np.argsort(-depth, kind="stable")
+    order = order[crossing[order]]
+    number = np.zeros(len(ways.row), dtype=np.int64)
+    number[order] = np.arange(len(order))
+    between = []
+    for points, cosine in ways.between:
+        between.append((len(points), place(cosine[np.argsort(number[points])])))
     return _Thrown(
         pairs(ways.row, ways.mirror, ways.entry, np.where(crossing, 0.0, ways.weight)),
         pairs(ways.row, ways.mirror, ways.entry, ways.gable),
-        rows,
-        starts,
-        ways.weight[crossing],
-        place(ways.mirror[crossing]),
-        place(ways.entry[crossing]),
-        tuple((number[points], place(cosine)) for points, cosine in ways.between),
+        row_sums(ways.row[order], ways.weight[order]),
+        place(ways.mirror[order]),
+        place(ways.entry[order]),
+        tuple(between),
         tuple((number[points], place(cosine), share) for points, cosine, share in ways.beyond),
     )
 

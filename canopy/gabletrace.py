@@ -265,20 +265,15 @@ def _inner_line(
     if sec.ridge_width > 0.0:
         solid = np.maximum(1.0 - 0.5 * sec.ridge_width / sec.ridge_at, 1.0 - sec.ridge_depth / sec.rise)
         half, reach = 0.5 * sec.ridge_width, sec.ridge_depth / slope
-        for k in range(3):
-            edges = [
-                *edges,
-                *[1.0 + (k * sec.width + at) / ridge for at in (half + reach, -half, reach - half)],
-            ]
-        edges = [*edges, solid]
+        boxes = [k * sec.width + at for k in range(3) for at in (half + reach, -half, reach - half)]
+        edges = [*edges, *[1.0 + at / ridge for at in boxes], solid]
     cuts = cut(edges, 1.0)
     t, low_t, high_t = cuts.mid, cuts.low, cuts.high
     meets, stopped = neighbours(sec, t * cuts.at(ridge), cuts.at(ridge), cuts.at(slope))
     entry = t * cuts.at(top)
     landing = entry - cuts.at(back)
-    lost = np.maximum(np.ceil(-landing / sec.width - 1e-12), 0.0).astype(
-        np.int64
-    )  # spans from whose light none lands
+    # spans from whose light none lands inside: at the far wall, at the near wall
+    lost = np.maximum(np.ceil(-landing / sec.width - 1e-12), 0.0).astype(np.int64)
     skip = np.maximum(np.floor(landing / sec.width), 0.0).astype(np.int64)
     blocked = (t > cuts.at(solid)) | (entry < cuts.at(nearest)) | (entry > cuts.at(farthest))
     room = np.clip(sec.spans - lost - skip, 0, sec.spans)
@@ -292,13 +287,10 @@ def _inner_line(
     x = cuts.at(ridge)
     moved = replace(cuts, low=low_t * x, high=high_t * x, mid=t * x)
     zero = np.zeros_like(room)
+    size = cuts.at(up / sun.up) * np.abs(cuts.at(top)) / (sec.width * sec.spans)
     return Line(
         moved,
-        np.where(
-            blocked,
-            0.0,
-            cuts.at(up / sun.up) * np.abs(cuts.at(top)) * (high_t - low_t) / (sec.width * sec.spans),
-        ),
+        np.where(blocked, 0.0, size * (high_t - low_t)),
         cuts.at(slope),
         drift,
         shift(low_t),
