@@ -89,6 +89,7 @@ class Model:
     vent_at: Floats
     humidity_max: Floats  # share 0 ... 1
     dry_outside: Bools
+    let_go: Bools  # hours taken without their humidity limit (see `balance`)
     open_all: Bools
     vent_max: Floats
     min_pipe: Floats
@@ -280,7 +281,7 @@ def build_model(case: HeatCase, bands: BandSet = THERMAL) -> Model:
         soil_start=start, gain=_gains(case, index, order), drawn=drawn, gap_max=gap_max,
         heat_at=heat_at, vent_at=vent_at, humidity_max=limit,
         dry_outside=e_out < VENT_HELPS_BELOW * limit * vp.saturation(warm_side)[0],
-        open_all=_stand_open(temp_out, heat_at, vent_at, drawn),
+        let_go=np.zeros(hours, dtype=bool), open_all=_stand_open(temp_out, heat_at, vent_at, drawn),
         vent_max=np.full(hours, 1.0 if shell.vent_area_ratio > 0.0 else 0.0),
         min_pipe=np.where(np.isfinite(heat_at), order.into(climate.min_pipe_c), -np.inf),
     )  # fmt: skip

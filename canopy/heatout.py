@@ -130,4 +130,7 @@ def _notes(model: Model) -> tuple[str, ...]:
         notes.append("The record starts settled: no heat is taken from or left to a time before it.")
     if model.hours * model.step_s < 300 * 86400.0:
         notes.append("Record below 300 days: the deep ground is at the record's mean outside temperature.")
+    if model.let_go.any():
+        count = int(model.let_go.sum())
+        notes.append(f"{count} hours: opening would not have lowered the humidity; limit let go.")
     return tuple(notes)

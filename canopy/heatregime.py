@@ -222,18 +222,22 @@ def vent_row(c: Context) -> None:
     system.add_slope(row, ix.house_air, by_air + np.where(by_dry, rise, 0.0))
     system.add_slope(row, ix.air0_vapour, np.where(by_dry, -VAPOUR_WEIGHT, 0.0))
     c.humid = by_dry | by_stop | by_give
+    c.turn = np.where(by_cool, -np.sign(cool), np.where(by_dry, -np.sign(dry), 0.0))
 
 
-def vent_reach(model: Model, opening: Floats) -> tuple[Floats, Floats]:
-    """How far the opening may move in one step: just past the next kink of its row, down and up.
+def vent_reach(c: Context, firm: bool = False) -> tuple[Floats, Floats, Floats]:
+    """How far the opening may move in one step, down and up to just past its row's next kink, and which way.
 
     Kinks are shut, the end of the screen gap, the limit for humidity and fully open. Stopping there, before
-    the other unknowns are solved, keeps a step from settling them for a regime that does not hold.
+    the other unknowns are solved, keeps a step from settling them for a regime that does not hold. If `firm`,
+    a house too warm or too humid opens and one too cool closes, whatever the slope at hand says (opening can
+    raise the relative humidity before it lowers it).
     """
+    model, opening = c.model, c.u[c.ix.vent]
     most = model.gap_max + model.vent_max
     humid = np.where(model.humidity_max < 1.0, np.minimum(model.gap_max + HUMID_VENT_MAX, most), most)
     low, high = np.full(model.hours, -PAST_KINK), most + PAST_KINK
     for kink in (0.0 * most, model.gap_max, humid, most):
         low = np.where(opening > kink + 1.01 * PAST_KINK, np.maximum(low, kink - PAST_KINK), low)
         high = np.where(opening < kink - 1.01 * PAST_KINK, np.minimum(high, kink + PAST_KINK), high)
-    return low - opening, high - opening
+    return low - opening, high - opening, c.turn if firm else 0.0 * most

@@ -22,20 +22,20 @@ Bools = NDArray[np.bool_]
 
 TRIES: Final = 30
 HALVINGS: Final = 9
-STARTS: Final = ((0.0, -3.0), (0.03, 0.0), (0.3, -3.0), (1.0, -3.0), (1.0, 3.0), (0.0, 3.0))
-"""Openings to start from, and covering less air temperature, K."""
+STARTS: Final = ((0.0, -3.0), (0.0, -3.0), (0.03, 0.0), (1.0, -3.0), (1.0, 3.0), (0.0, 3.0))
+"""Openings to start from, and covering less air temperature, K; every other one with a firm turn."""
 STALLED: Final = 6  # tries without a better value in any hour that end a descent
 
 
 def alone(model: Model, unknown: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Bools]:
     """Solve hours by themselves, their past held; returns the unknowns and where they are closed."""
     best, done = _descend(model, [u.copy() for u in unknown], gone, closed)
-    for opening, cover in STARTS:
+    for number, (opening, cover) in enumerate(STARTS):
         if done.all():
             break
         at = np.flatnonzero(~done)
         part, before = model.take(at), gone.take(at)
-        trial, ok = _descend(part, _fresh(part, before, opening, cover), before, closed)
+        trial, ok = _descend(part, _fresh(part, before, opening, cover), before, closed, number % 2 == 1)
         for k in range(len(best)):
             best[k][at[ok]] = trial[k][ok]
         done[at[ok]] = True
@@ -63,7 +63,9 @@ def opened(c: Context) -> Floats:
     return np.asarray(np.max(np.abs(np.array(c.system.residual)), axis=0))
 
 
-def _descend(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Bools]:
+def _descend(
+    model: Model, u: list[Floats], gone: Past, closed: float, firm: bool = False
+) -> tuple[list[Floats], Bools]:
     """Newton steps, each hour with its own share of the step, halved until the open amount falls."""
     ix = model.index
     vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
@@ -74,8 +76,8 @@ def _descend(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[
         if float(error.max()) < closed or stall > STALLED:
             break
         sides: list[list[Entry]] = [[r.copy()] for r in context.system.residual]
-        reach = vent_reach(model, u[ix.vent])
-        x = eliminate([row[: ix.size] for row in context.system.slope], sides, reach, model.hours)
+        slopes = [row[: ix.size] for row in context.system.slope]
+        x = eliminate(slopes, sides, vent_reach(context, firm), model.hours)
         steps = [np.zeros(model.hours) if row[0] is None else row[0] for row in x]
         size = np.ones(model.hours)
         for k in range(ix.size):

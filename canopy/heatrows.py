@@ -75,11 +75,11 @@ class Context:
         self.ratio = [vp.mixing_ratio(unknown[ix.vapour(k)], model.pressure) for k in spaces]
         self.before, self.film_before, self.history = gone.before, gone.film, gone.history
         self.wet = np.minimum(self.film_before / vp.FILM_FULL_KG_M2, 1.0)
-        self.film_after = self.speed = np.empty(0)
+        self.film_after = self.inflow = self.speed = np.empty(0)
         self.film_slopes = (np.empty(0), np.empty(0))
         self.inflow_slopes: list[tuple[int, Floats]] = []
         self.speed_slopes: list[tuple[int, Floats]] = []
-        self.pipe_keeps = np.empty(0)
+        self.pipe_keeps = self.turn = np.empty(0)
         self.at_limit = self.humid = np.empty(0, dtype=bool)
         opening = unknown[ix.vent]
         some = model.gap_max > 0.0
@@ -160,6 +160,7 @@ def _condense(c: Context, h: Floats, by_diff: Floats, by_speed: Floats) -> None:
     unit = m.lewis * (m.step_s / vp.LATENT_HEAT)
     excess = c.u[vapour] - c.saturation[last][0]
     inflow = unit * h * excess
+    c.inflow = inflow
     film, uptake, over, by_before, by_inflow = vp.film_step(c.film_before, inflow)
     held = over <= 0.0
     per_kg = m.cover_size * vp.LATENT_HEAT / m.step_s

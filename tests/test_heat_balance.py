@@ -295,7 +295,7 @@ def test_random_days_close(day: dict) -> None:  # type: ignore[type-arg]
     made: HeatCase = case(
         slice(None), day["cover"], (cloth(0.3, 0.3),) if day["screened"] else (), weather=record,
         heat=day["heat"], lai=day["lai"], humidity=day["limit"], capacity=day["capacity"],
-        gap=0.05 if day["screened"] else None, periodic=True,
+        gap=0.05 if day["screened"] else None,
     )  # fmt: skip
     r = solve(made)
     check(r)
