@@ -207,12 +207,14 @@ def closing(run: Run) -> Section:
             rows.append(
                 Row(one.plan.name, (c.budget, f"{c.worst_w_m2:.1e}", c.at.replace("T", " ")[:16]), mark)
             )
+    gap = "less than a thousandth of a W/m²" if worst < 1e-3 else f"{number(worst, 3)} W/m²"
     lead = (
-        f"Every budget of every candidate closes: the largest gap in any hour is {worst:.1e} W/m². A run "
-        "with an hour that stays open above 0.1 W/m² ends without a report."
+        f"Every budget of every candidate closes: the largest gap in any hour is {gap}. A run with an hour "
+        "that stays open above 0.1 W/m² ends without a report."
     )
     retried = sum(one.heat.retried_hours for one in run.candidates)
-    extra = (f"{number(retried)} hours were solved again by a second route.",) if retried else ()
+    again = say.count(retried, "hour was", "hours were")
+    extra = (f"{again} solved by a second route.",) if retried else ()
     return Section(
         "closure",
         "Closure",
