@@ -9,13 +9,15 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from canopy.spectrumcheck import check_spectrum
 from weather.errors import UserError
 
 Floats = NDArray[np.float64]
 
 MAX_BYTES = 8_000_000
 MAX_ROWS = 100_000
-SLACK = 0.02  # how far noise may carry a value out of 0..1, and T + R above 1
+MIN_ROWS = 8
+SURELY_PERCENT = 2.0  # no fraction, however noisy
 
 _COLUMNS = {
     "wavelength": "wavelength",
@@ -36,6 +38,7 @@ _COLUMNS = {
     "reflectanceback": "back",
     "rback": "back",
 }
+_VALUES = ("transmit", "front", "back", "scattered")
 _HELP = (
     "columns are wavelength_nm or wavelength_um, transmittance, reflectance_front, reflectance_back, "
     "and transmittance_diffuse if measured; fractions or percent"
@@ -64,29 +67,24 @@ def read_lab_csv(path: Path) -> LabSpectrum:
     _, header = lines[0]
     separator = max(";\t,", key=header.count)
     columns, percent = _columns(path, header.split(separator))
-    rows = [_numbers(path, number, text, separator, len(columns)) for number, text in lines[1:]]
-    if len(rows) < 8:
-        raise UserError(f"{path.name}: {len(rows)} rows of numbers; a spectrum needs at least 8")
-    data = dict(zip(columns, np.array(rows).T, strict=True))
-    wavelength, notes = _wavelength(path, data)
-    order = np.argsort(wavelength, kind="stable")
-    wavelength = wavelength[order]
-    if (np.diff(wavelength) <= 0.0).any():
-        at = wavelength[int(np.argmin(np.diff(wavelength)))]
-        raise UserError(f"{path.name}: wavelength {at:g} µm stands twice; write each wavelength once")
-    values: dict[str, Floats] = {
-        key: _fraction(path, key, data[key][order], wavelength, percent, notes)
-        for key in ("transmit", "front", "back", "scattered")
-        if key in data
-    }
-    _check_sum(path, wavelength, values)
+    table = [_numbers(path, number, text, separator, len(columns)) for number, text in lines[1:]]
+    rows = [number for number, _ in lines[1:]]
+    data = dict(zip(columns, np.array(table).reshape(-1, len(columns)).T, strict=True))
+    wavelength, notes = _wavelength(data)
+    values = _fractions({key: data[key] for key in _VALUES if key in data}, percent, notes)
+    if (np.diff(wavelength) < 0.0).all():  # instruments scan down as often as up
+        wavelength, rows = wavelength[::-1], rows[::-1]
+        values = {key: column[::-1] for key, column in values.items()}
+    transmit, *others = (values.get(key) for key in _VALUES)
+    assert transmit is not None  # `_columns` asks for it
+    checked = check_spectrum(path.name, wavelength, transmit, *others, rows=rows, min_rows=MIN_ROWS)
     return LabSpectrum(
-        wavelength,
-        values["transmit"],
-        values.get("front"),
-        values.get("back"),
-        values.get("scattered"),
-        tuple(notes),
+        checked.wavelength_um,
+        checked.transmit,
+        checked.front,
+        checked.back,
+        checked.scattered,
+        (*notes, *checked.notes),
     )
 
 
@@ -151,57 +149,22 @@ def _numbers(path: Path, number: int, text: str, separator: str, count: int) -> 
     return values
 
 
-def _wavelength(path: Path, data: dict[str, Floats]) -> tuple[Floats, list[str]]:
-    notes: list[str] = []
+def _wavelength(data: dict[str, Floats]) -> tuple[Floats, list[str]]:
+    """Return wavelengths in µm; without a unit in the header, large ones are nm."""
     if "wavelength_um" in data:
-        wave = data["wavelength_um"]
-    elif "wavelength_nm" in data:
-        wave = data["wavelength_nm"] / 1000.0
-    else:
-        raw = data["wavelength"]
-        in_nm = float(np.median(raw)) > 120.0
-        wave = raw / 1000.0 if in_nm else raw
-        notes.append(f"wavelength without unit: read as {'nm' if in_nm else 'µm'}")
-    if wave.min() < 0.15 or wave.max() > 120.0:
-        raise UserError(
-            f"{path.name}: wavelengths {wave.min():g}-{wave.max():g} µm; "
-            "they lie in .15-120 µm (check nm and µm)"
-        )
-    return wave, notes
+        return data["wavelength_um"], []
+    if "wavelength_nm" in data:
+        return data["wavelength_nm"] / 1000.0, []
+    raw = data["wavelength"]
+    in_nm = raw.size > 0 and float(np.median(raw)) > 120.0
+    note = f"wavelength without unit: read as {'nm' if in_nm else 'µm'}"
+    return (raw / 1000.0 if in_nm else raw), [note]
 
 
-def _fraction(
-    path: Path, key: str, values: Floats, wavelength: Floats, percent: set[str], notes: list[str]
-) -> Floats:
-    title = {"transmit": "transmittance", "front": "reflectance_front", "back": "reflectance_back"}.get(
-        key, "transmittance_diffuse"
-    )
-    if key in percent or values.max() > 1.0 + SLACK:
-        values = values / 100.0
-        notes.append(f"{title} read as percent")
-    bad = (values < -SLACK) | (values > 1.0 + SLACK)
-    if bad.any():
-        at = int(np.argmax(bad))
-        raise UserError(
-            f"{path.name}: {title} {values[at]:g} at {wavelength[at]:g} µm; it lies in 0-1 (or 0-100 %)"
-        )
-    return np.clip(values, 0.0, 1.0)
-
-
-def _check_sum(path: Path, wavelength: Floats, values: dict[str, Floats]) -> None:
-    for key in ("front", "back"):
-        if key not in values:
-            continue
-        total = values["transmit"] + values[key]
-        if (total > 1.0 + SLACK).any():
-            at = int(np.argmax(total))
-            raise UserError(
-                f"{path.name}: transmittance + reflectance is {total[at]:.3f} at {wavelength[at]:g} µm; "
-                "it cannot exceed 1"
-            )
-    if "scattered" in values and (values["scattered"] > values["transmit"] + SLACK).any():
-        at = int(np.argmax(values["scattered"] - values["transmit"]))
-        raise UserError(
-            f"{path.name}: transmittance_diffuse exceeds transmittance at {wavelength[at]:g} µm; "
-            "it is a part of it"
-        )
+def _fractions(values: dict[str, Floats], percent: set[str], notes: list[str]) -> dict[str, Floats]:
+    """Return fractions: a file is in percent when a header says so or a value is too large for a fraction."""
+    large = [key for key, column in values.items() if column.size and column.max() > SURELY_PERCENT]
+    if not percent and not large:
+        return values
+    notes.append("values read as percent")
+    return {key: column / 100.0 for key, column in values.items()}

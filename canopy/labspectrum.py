@@ -99,12 +99,6 @@ def covering_from_spectrum(
 
 
 def _require_cover(path: Path, lab: LabSpectrum) -> None:
-    low, high = float(lab.wavelength_um[0]), float(lab.wavelength_um[-1])
-    if low > SOLAR_FROM_UM + 0.005 or high < SOLAR_TO_UM - 0.005:
-        raise UserError(
-            f"{path.name}: covers {low:g}-{high:g} µm; "
-            f"PAR needs at least {SOLAR_FROM_UM:g}-{SOLAR_TO_UM:g} µm"
-        )
     inside = (lab.wavelength_um >= SOLAR_FROM_UM) & (lab.wavelength_um <= SOLAR_TO_UM)
     if inside.sum() < 7:
         raise UserError(f"{path.name}: {inside.sum()} points in .40-.70 µm; at least 7 are needed")

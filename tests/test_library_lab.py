@@ -142,10 +142,22 @@ def test_percent_nanometres_semicolons_and_descending_rows(tmp_path: Path) -> No
     lab = read_lab_csv(path)
     assert lab.wavelength_um[0] == pytest.approx(0.3)
     assert (np.diff(lab.wavelength_um) > 0).all()
-    assert "transmittance read as percent" in lab.notes
+    assert "values read as percent" in lab.notes
     np.testing.assert_allclose(lab.transmit, t, atol=1e-4)
     covering = covering_from_spectrum(path, "mine", 4.0).covering
     assert figures(covering).par_normal == pytest.approx(0.885, abs=0.003)
+
+
+def test_noise_beyond_the_ends_is_clipped_and_said(tmp_path: Path) -> None:
+    rows = [f"{w},{1.004 if w == 500 else 0.9},{-0.002 if w == 600 else 0.0}" for w in range(380, 800, 10)]
+    path = tmp_path / "lab.csv"
+    path.write_text("wavelength_nm,transmittance,reflectance\n" + "\n".join(rows), encoding="utf-8")
+    lab = read_lab_csv(path)
+    assert lab.front is not None
+    assert lab.transmit.max() == 1.0
+    assert lab.front.min() == 0.0
+    assert "lab.csv: transmittance clipped to 0 ... 1 in 1 rows (noise)" in lab.notes
+    assert "lab.csv: reflectance clipped to 0 ... 1 in 1 rows (noise)" in lab.notes
 
 
 def test_low_values_in_percent_are_percent_by_their_header(tmp_path: Path) -> None:
@@ -255,12 +267,33 @@ BAD = {
     "not a number": (_broken(lambda x: [*x, "810,many,0.1"]), 'row 44: "many" is not a number'),
     "cells": (_broken(lambda x: [*x, "810,0.9"]), "row 44: 2 cells; the header has 3"),
     "infinite": (_broken(lambda x: [*x, "810,inf,0.1"]), "is not a number"),
-    "repeated": (_broken(lambda x: [*x, "790,0.9,0.08"]), "0.79 µm stands twice"),
-    "too much": (_broken(lambda x: [*x, "810,0.97,0.2"]), "it cannot exceed 1"),
-    "negative": (_broken(lambda x: [*x, "810,-0.3,0.2"]), "lies in 0-1"),
+    "repeated": (
+        _broken(lambda x: [*x, "790,0.9,0.08"]),
+        "row 44: found 0.79; wavelength does not rise",
+    ),
+    "too much": (
+        _broken(lambda x: [*x, "810,0.97,0.2"]),
+        "row 44: found 1.17; transmittance + refl",
+    ),
+    "negative": (
+        _broken(lambda x: [*x, "810,-0.006,0.2"]),
+        "row 44: found -0.006; transmittance below",
+    ),
+    "unsorted": (
+        _broken(lambda x: [*x[:9], x[10], x[9], *x[11:]]),
+        "row 11: found 0.46; wavelength does",
+    ),
+    "spike": (_broken(lambda x: [*x, "810,1.05,0.0"]), "row 44: found 1.05; transmittance above 1.02"),
+    "scattered": (
+        _broken(lambda x: [x[0] + ",t_diffuse", *(f"{row},0.95" for row in x[1:])]),
+        "row 2: found 0.95; diffuse transmittance above transmittance",
+    ),
     "short": (_broken(lambda x: x[:5]), "at least 8"),
-    "range": (_broken(lambda x: x[:20]), "PAR needs at least 0.4-0.7"),
-    "units": ("\n".join(["wavelength_um,t", *(f"{w},0.9" for w in range(380, 800, 10))]), "check nm and µm"),
+    "range": (_broken(lambda x: x[:20]), "0.4-0.7 is needed"),
+    "units": (
+        "\n".join(["wavelength_um,t", *(f"{w},0.9" for w in range(380, 800, 10))]),
+        "row 2: wavelength 380 looks like nm",
+    ),
     "empty": ("", "empty"),
 }
 
