@@ -29,6 +29,26 @@ HOURS = (
 )
 
 
+def _climate_words(rows: Sequence[Summary], show: Display) -> list[str]:
+    hot = max(rows, key=lambda r: r.total["temp_air_max_c"])
+    lead = [
+        f"The warmest hour of all candidates is {show.say(hot.total['temp_air_max_c'], 'degC')} with "
+        f"{hot.name}."
+    ]
+    wet = max(rows, key=lambda r: r.total["leaf_wet_h"])
+    if wet.total["leaf_wet_h"] >= 1:
+        lead.append(
+            f"Leaves are at or below the dew point for up to {number(wet.total['leaf_wet_h'])} hours "
+            f"({wet.name}): a sign of where leaf disease starts."
+        )
+    frost = [r for r in rows if r.total["frost_h"] > 0]
+    if frost:
+        lead.append(
+            say.listed([f"{r.name}: {number(r.total['frost_h'])} hours of leaf frost" for r in frost]) + "."
+        )
+    return lead
+
+
 def climate(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     """Return what climate results."""
     marks = marks_of(run)
@@ -67,22 +87,7 @@ def climate(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         ),
         ("", *(("h",) * len(HOURS))),
     )
-    hot = max(rows, key=lambda r: r.total["temp_air_max_c"])
-    lead = [
-        f"The warmest hour of all candidates is {show.say(hot.total['temp_air_max_c'], 'degC')} with "
-        f"{hot.name}."
-    ]
-    wet = max(rows, key=lambda r: r.total["leaf_wet_h"])
-    if wet.total["leaf_wet_h"] >= 1:
-        lead.append(
-            f"Leaves are at or below the dew point for up to {number(wet.total['leaf_wet_h'])} hours "
-            f"({wet.name}): a sign of where leaf disease starts."
-        )
-    frost = [r for r in rows if r.total["frost_h"] > 0]
-    if frost:
-        lead.append(
-            say.listed([f"{r.name}: {number(r.total['frost_h'])} hours of leaf frost" for r in frost]) + "."
-        )
+    lead = _climate_words(rows, show)
     return Section(
         "climate",
         "Climate inside",

@@ -112,11 +112,13 @@ def answer(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     if len(rows) == 1:
         light = f"Light: {percent(base.light_share)} of the outside PAR reaches the top of the crop"
         peak = show.say(base.peak_w, "W/m2")
+        if base.heat_kwh <= 0:
+            return f"{light}.", "It takes no heat: temperatures float.", cold_words(rows, show)
         return f"{light}.", f"Heat: {show.say(base.heat_kwh, 'kWh/m2')} {span}, {peak} in the largest hour."
     cool = min(rows, key=lambda r: r.heat_kwh)
     bright = max(rows, key=lambda r: r.inside_mol)
     if cool.heat_kwh <= 0:
-        lines = ["No candidate needs heat under the set-points given."]
+        lines = ["No candidate takes heat: temperatures float.", cold_words(rows, show)]
     else:
         against = "" if cool is base else f", {change(cool.heat_kwh, base.heat_kwh, 'heat')} than {base.name}"
         lines = [f"Least heat: {cool.name}, {show.say(cool.heat_kwh, 'kWh/m2')} {span}{against}."]
@@ -126,6 +128,19 @@ def answer(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         f"crop {span}, {percent(bright.light_share)} of what falls outside."
     )
     return tuple(lines)
+
+
+def cold_words(rows: Sequence[Summary], show: Display) -> str:
+    """Return which unheated house stays warmest and coldest, by its leaves."""
+    warm = max(rows, key=lambda r: r.total["leaf_min_c"])
+    cold = min(rows, key=lambda r: r.total["leaf_min_c"])
+    parts = [
+        f"{show.say(r.total['leaf_min_c'], 'degC')} with {r.name} "
+        f"({count(r.total['frost_h'], 'hour', 'hours')} of leaf frost, "
+        f"{count(r.total['below_limit_h'], 'hour', 'hours')} below the crop's limit)"
+        for r in ((warm,) if warm is cold else (warm, cold))
+    ]
+    return f"Coldest leaves: {' and '.join(parts)}."
 
 
 def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:

@@ -32,7 +32,9 @@ def sizing_row(one: CandidateRun, utc_offset: str) -> Mapping[str, Any]:
     row: dict[str, Any] = {"candidate": one.plan.name}
     for name in COLUMNS:
         value = getattr(one.sizing, name)
-        if isinstance(value, np.datetime64):
+        if name == "peak_at" and one.sizing.peak_w_m2 <= 0:
+            row[name] = None  # a house without heat has no peak
+        elif isinstance(value, np.datetime64):
             row[name] = str(value.astype("datetime64[s]")) + utc_offset
         else:
             row[name] = round(float(value), DIGITS.get(name, 2))

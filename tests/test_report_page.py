@@ -257,6 +257,8 @@ def test_an_unheated_tunnel_has_a_page_too() -> None:
             )
         )
     words = "".join(read(page_text(replace(run, candidates=tuple(cold)))).words)
-    assert "No candidate needs heat" in words
+    assert "No candidate takes heat: temperatures float." in words
+    coldest = min(one.daily["leaf_min_c"].min() for one in cold)
+    assert f"Coldest leaves: {coldest:.1f}\u00a0°C with single glass (0 hours of leaf frost" in words
     assert "no heat is asked for" in words
     assert "nan" not in re.sub(r"[a-z]*nan[a-z]+", "", words.lower())
