@@ -57,9 +57,16 @@ def _by_row(row: Ints, weight: Floats, values: Floats, rows: int) -> Floats:
 
 def spread(row: Ints, cosine: Floats, weight: Floats, rows: int) -> Floats:
     """Return node weights of sums of f(cosine) x weight, (rows, SINGLE)."""
-    if not len(row):
-        return np.zeros((rows, SINGLE))
-    return _by_row(row, weight, _basis(cosine, SINGLE), rows)
+    return spread_many(row, cosine, (weight,), rows)[0]
+
+
+def spread_many(row: Ints, cosine: Floats, weights: tuple[Floats, ...], rows: int) -> tuple[Floats, ...]:
+    """Return the same for several weights of the same points."""
+    use = np.flatnonzero(np.any([w != 0.0 for w in weights], axis=0))
+    if not len(use):
+        return tuple(np.zeros((rows, SINGLE)) for _ in weights)
+    basis = _basis(cosine[use], SINGLE)
+    return tuple(_by_row(row[use], w[use], basis, rows) for w in weights)
 
 
 @dataclass(frozen=True)
@@ -107,7 +114,7 @@ def row_sums(row: Ints, weight: Floats) -> RowSums:
 
 def pairs(row: Ints, first: Floats, second: Floats, weight: Floats) -> Pairs:
     """Return the node weights of points with two incidences."""
-    use = np.abs(weight) > 0.0
+    use = np.abs(weight) > 1e-9
     row, first, second, weight = row[use], first[use], second[use], weight[use]
     rows, number = np.unique(row, return_inverse=True)
     total = np.zeros((len(rows), DOUBLE * DOUBLE))

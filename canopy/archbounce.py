@@ -15,9 +15,9 @@ import numpy as np
 from canopy.archbasis import spread
 from canopy.archtrace import Arc, Passes, Points, Sums, crossings, follow, section_height
 from canopy.house import House
-from canopy.rays import Floats, Rays
+from canopy.rays import Floats, Ints, Rays
 
-INNER_POINTS = 40
+INNER_POINTS, BACK_POINTS = 40, 10
 
 
 @dataclass(frozen=True)
@@ -119,9 +119,15 @@ def inner(arc: Arc, house: House, rays: Rays) -> InnerWays:
     )  # fmt: skip
     points = points.some(weight > 0.0)
     passes = follow(arc, house, points, sums)
-    all_slopes = e + (arc.edge - e) * (np.arange(INNER_POINTS) + 0.5) / INNER_POINTS
-    facing = np.sin(all_slopes - e)
-    every = across * facing.ravel() * np.repeat((arc.edge - e[:, 0]) / INNER_POINTS, INNER_POINTS)
-    every = every * arc.radius / (rays.up[row] * arc.width)
-    back = spread(row, across * facing.ravel(), every, rows)
-    return InnerWays(sums.single, sums.gable_nodes, passes, back)
+    return InnerWays(sums.single, sums.gable_nodes, passes, _back(arc, rays, use))
+
+
+def _back(arc: Arc, rays: Rays, use: Ints) -> Floats:
+    """Return all light that meets the inside of the half facing away, by incidence, (M, nodes)."""
+    e = section_height(rays)[use]
+    step = (arc.edge - e) / BACK_POINTS
+    facing = np.sin(step[:, None] * (np.arange(BACK_POINTS) + 0.5)).ravel()
+    row = np.repeat(use, BACK_POINTS)
+    across = np.hypot(rays.across, rays.up)[row]
+    light = across * facing * np.repeat(step, BACK_POINTS) * arc.radius / (rays.up[row] * arc.width)
+    return spread(row, across * facing, light, len(rays.up))

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from canopy.archbasis import SINGLE, spread
+from canopy.archbasis import SINGLE, spread, spread_many
 from canopy.house import House
 from canopy.rays import Bools, Floats, Ints, Rays, cut
 from canopy.structure import bars_open
@@ -25,7 +25,7 @@ def _rule(count: int) -> tuple[Floats, Floats]:
     return s**2 * (3.0 - 2.0 * s), 3.0 * weight * s * (1.0 - s)
 
 
-FULL_RULE, SHORT_RULE = _rule(10), _rule(4)
+FULL_RULE, SHORT_RULE = _rule(8), _rule(4)
 SHORT_PIECE = 0.12
 """Pieces below this share of a span, and lines that meet two neighbours or more, get the short rule."""
 
@@ -258,8 +258,9 @@ def follow(arc: Arc, house: House, points: Points, sums: Sums) -> Passes:
             sums.gable += np.bincount(part.row, weights=through, minlength=sums.rows)
             if sums.gable_nodes is not None:
                 sums.gable_nodes += spread(part.row, cosine, through * bar, sums.rows)
-            sums.single += spread(part.row, cosine, free * bar, sums.rows)
-            sums.mirror += spread(part.row, cosine, mirrored * bar, sums.rows)
+            once, again = spread_many(part.row, cosine, (free * bar, mirrored * bar), sums.rows)
+            sums.single += once
+            sums.mirror += again
             first_cosine, first_bar = cosine, bar
         else:
             opens = opens * bar

@@ -169,10 +169,12 @@ def _roof_part(sec: Section, line: Line, sums: _Sums, gable: _Sums | None) -> No
     row, weight = free.cuts.row[use], free.weight[use] * free.spans_with(0)[use]
     out = free.share(low, high, use)
     hit = free.stopped[use] == 0
+    before = out
     if hit.any():
-        stop = np.maximum(free.share(*ridge_box_height(sec, free, use, 0), use), out)
-        sums.rear += gather(row, np.where(hit, weight * (stop - out), 0.0), sums.rows)
-    sums.gable += gather(row, weight * out, sums.rows)
+        stop = free.share(*ridge_box_height(sec, free, use, 0), use)
+        sums.rear += gather(row, np.where(hit, weight * np.maximum(stop - out, 0.0), 0.0), sums.rows)
+        before = np.where(hit, np.minimum(stop, out), out)
+    sums.gable += gather(row, weight * before, sums.rows)
     sums.rear += gather(row, np.where(hit, 0.0, weight * (1.0 - out)), sums.rows)
     if gable is not None:
         gable.rear += gather(row, np.where(hit, 0.0, weight * out), sums.rows)

@@ -66,13 +66,14 @@ def replace_weather(hours: int) -> Weather:
 
 @pytest.mark.parametrize("name", list(CASES))
 def test_against_monte_carlo(name: str) -> None:
-    # 30 suns, heights 10-75 degrees; Sobol points, 1e-4 at boxes
+    # 30 suns, heights 10-75 degrees, Sobol points
     case = CASES[name]
     rays = np.array(case["rays"])
     light = passed(reference_house(case["house"]), 90.0 - rays[:, 0], rays[:, 1])
-    np.testing.assert_allclose(light.straight[1], rays[:, 2], atol=1.5e-4)
-    # semicircles side by side with the sun nearly along the ridge: light through gable ends into the valley
-    np.testing.assert_allclose(light.bounce[1], rays[:, 3], atol=1.2e-3 if name == "semicircles" else 2.5e-4)
+    np.testing.assert_allclose(light.straight[1], rays[:, 2], atol=1e-4)
+    # wider: arches thrown over valleys are sampled; semicircles with a low sun nearly along the ridge
+    wider = {"flat arches, gutters": 2.5e-4, "semicircles": 1e-3}
+    np.testing.assert_allclose(light.bounce[1], rays[:, 3], atol=wider.get(name, 2e-4))
 
 
 @pytest.mark.parametrize("name", ["two pitches, boxes", "one tunnel"])
