@@ -14,12 +14,11 @@ from canopy.heatcase import HeatCase, HeatResult
 from canopy.heatindex import order_index
 from canopy.heatmodel import Model, build_model
 from canopy.heatout import result
-from canopy.heatregime import PAST_KINK, evaluate, vent_reach
+from canopy.heatregime import evaluate
 from canopy.heatretry import alone
-from canopy.heatrows import FILM, HISTORY, SPEED, Context, State, past, soil_line
+from canopy.heatrows import Context, State, past, soil_line
+from canopy.heatstep import Stepper, open_by, set_soil
 from canopy.longwave import band_emission
-from canopy.march import Response, march, run_modes
-from canopy.newton import Entry, eliminate
 from canopy.optics import ThermalOptics
 from weather.errors import OpenHourError
 
@@ -36,9 +35,7 @@ FIRST_PASSES: Final = 12
 LATER_PASSES: Final = 5
 APART: Final = 3  # first passes, each hour by itself: far from the answer the past only spreads the error
 GREY_C: Final = 10.0  # temperature at which grey means are weighted
-LARGEST_STEP_K: Final = 8.0
-LARGEST_STEP_PA: Final = 800.0
-SATURATED: Final = 1.004  # a step goes no further beyond saturation; fog keeps the air below
+FEW: Final = 0.6  # share of hours still moving below which only they are evaluated
 
 
 GREY: Final = BandSet(("all",), (3.0, 100.0))
@@ -68,17 +65,24 @@ def settle(model: Model, state: State, quick: bool = False) -> tuple[Context, in
     other route solved.
     """
     passes, by_other_route = 0, 0
+    stepper = Stepper(model, state)
     for turn in range(TURNS):
         for step in range(FIRST_PASSES if turn == 0 else LATER_PASSES):
-            context = evaluate(model, state.unknown, past(model, state))
-            error = open_by(model, state, context)
             passes += 1
+            active = stepper.active
+            if active is not None and 0 < len(active) < FEW * model.hours:
+                stepper.step_moving()
+                continue
+            context, error, _ = stepper.look()
             if float(error.max()) < CLOSED_W_M2:
                 return context, passes, by_other_route
-            newton_step(model, state, context, apart=turn == 0 and step < APART and not quick)
+            if turn == 0 and step < APART and not quick:
+                stepper.apart(context)
+            else:
+                stepper.step(context, error)
         by_other_route += _other_route(model, state, turn)
-    context = evaluate(model, state.unknown, past(model, state))
-    error = open_by(model, state, context)
+        stepper.active = None
+    context, error, _ = stepper.look()
     if float(error.max()) < ENOUGH_W_M2:
         return context, passes + 1, by_other_route
     worst = int(np.argmax(model.order.back(error)))
@@ -93,7 +97,7 @@ def _other_route(model: Model, state: State, turn: int) -> int:
     is taken without its humidity limit, later with its vents open if nothing is heated: `notes` say so.
     """
     gone = past(model, state)
-    error = open_by(model, state, evaluate(model, state.unknown, gone))
+    error = open_by(model, state.film, evaluate(model, state.unknown, gone))
     at = np.flatnonzero(error > OPEN_W_M2)
     if len(at) == 0:
         return 0
@@ -155,143 +159,6 @@ def _why(model: Model, c: Context, error: Floats, hour: int, passes: int) -> str
         f"vents {c.u[ix.vent][at]:.2f}); "
         f"{int((error > CLOSED_W_M2).sum())} hours open after {passes} passes"
     )
-
-
-def open_by(model: Model, state: State, c: Context) -> Floats:
-    """Largest open amount over the rows of each hour, W/m2 (regime rows by their weights)."""
-    error = np.abs(c.system.residual[0])
-    for row in c.system.residual[1:]:
-        np.maximum(error, np.abs(row), out=error)
-    film = np.abs(c.film_after - state.film) * (vp.LATENT_HEAT * model.cover_size / model.step_s)
-    return np.maximum(error, film)
-
-
-def _right_sides(model: Model, c: Context) -> list[list[Entry]]:
-    """Columns: residual, soil history, each store's hour before, film before."""
-    ix, n = model.index, c.n
-    sides: list[list[Entry]] = []
-    for row in range(n):
-        a = c.system.slope[row]
-        line: list[Entry] = [c.system.residual[row].copy(), None]
-        if a[n + HISTORY] is not None:
-            line[1] = -a[n + HISTORY]  # type: ignore[operator]
-        for store in ix.stores:
-            entry: Entry = None
-            if store == row:
-                entry = model.capacity[row].copy()
-                if row == ix.air0_vapour:
-                    entry *= vp.mixing_ratio(c.before[row], model.pressure)[1]
-                if row == ix.pipe:
-                    entry *= c.pipe_keeps
-            line.append(entry)
-        film = a[n + FILM]
-        line.append(None if film is None else -film)
-        sides.append(line)
-    return sides
-
-
-def _film_line(model: Model, state: State, c: Context, x: list[list[Entry]]) -> list[Floats]:
-    """The film's own row after elimination, for every right-hand side."""
-    by_before, by_inflow = c.film_slopes
-    totals: dict[int, Floats] = {}
-    for column, slope in c.inflow_slopes:
-        parts = [(column, slope)]
-        if column == c.n + SPEED:
-            parts = [(k, slope * s) for k, s in c.speed_slopes]
-        for k, value in parts:
-            totals[k] = totals[k] + value if k in totals else value
-    columns = len(x[0])
-    out = []
-    for column in range(columns):
-        value = np.zeros(model.hours)
-        for k, slope in totals.items():
-            entry = x[k][column]
-            if entry is not None:
-                value += slope * entry
-        out.append(by_inflow * value)
-    out[0] += c.film_after - state.film
-    out[-1] += by_before
-    return out
-
-
-def _response(model: Model, c: Context, x: list[list[Entry]], film: list[Floats]) -> Response:
-    """Stack what the march needs: stores and film, then the floor."""
-    zero = np.zeros(model.hours)
-    rows: list[list[Entry]] = [*(x[k] for k in model.index.stores), list(film), x[model.index.floor]]
-    dense = [[zero if e is None else e for e in row] for row in rows]
-    conductance, _ = soil_line(c)
-    soil = model.soil
-    return Response(
-        own=np.array([row[0] for row in dense]),
-        history=np.array([row[1] for row in dense]),
-        before=np.array([row[2:] for row in dense]),
-        drive_floor=1.0 + conductance / soil.film,
-        drive_history=-(1.0 - model.soil_start) / (soil.film - soil.conductance),
-    )
-
-
-def newton_step(model: Model, state: State, c: Context, apart: bool = False) -> None:
-    """One Newton step of the whole record, marched in time (unless `apart`), limited, applied."""
-    ix, n = model.index, c.n
-    x = eliminate([row[:n] for row in c.system.slope], _right_sides(model, c), vent_reach(c), model.hours)
-    response = _response(model, c, x, _film_line(model, state, c, x))
-    if apart:
-        carried, drive = response.own[:-1], response.drive_floor * response.own[-1]
-        steps = [np.zeros(model.hours) if row[0] is None else row[0] for row in x]
-    else:
-        carried, recalled, drive = march(model, response)
-        shifted = model.order.before(carried) * (1.0 - model.soil_start)
-        steps = [_total(model.hours, row, recalled, shifted) for row in x]
-    size = np.ones(model.hours)
-    vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
-    for k in range(n):
-        if k != ix.vent:
-            limit = LARGEST_STEP_PA if k in vapours else LARGEST_STEP_K
-            np.maximum(size, np.abs(steps[k]) / limit, out=size)
-    share = 1.0 / size
-    for k in range(n):
-        state.unknown[k] = state.unknown[k] + share * steps[k]
-    state.film = np.clip(state.film + share * carried[-1], 0.0, vp.FILM_MAX_KG_M2)
-    state.drive = state.drive + np.clip(share * drive, -LARGEST_STEP_K, LARGEST_STEP_K)
-    keep_in_range(model, state)
-
-
-def _total(hours: int, row: list[Entry], recalled: Floats, shifted: Floats) -> Floats:
-    """An unknown's step: its own, by the soil's history, by each carried quantity of the hour before."""
-    step = np.zeros(hours) if row[0] is None else row[0]
-    if row[1] is not None:
-        step = step + row[1] * recalled
-    for entry, before in zip(row[2:], shifted, strict=True):
-        if entry is not None:
-            step = step + entry * before
-    return step
-
-
-def keep_in_range(model: Model, state: State) -> None:
-    """Hold unknowns in the range where the formulas mean something, and the soil in line with its drive."""
-    ix, u = model.index, state.unknown
-    vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
-    for k in range(ix.size):
-        if k == ix.vent:
-            u[k] = np.clip(u[k], -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
-        elif k not in vapours:
-            u[k] = np.clip(u[k], -80.0, 110.0)
-    for space in range(ix.screens + 1):
-        full = SATURATED * vp.saturation(u[ix.air(space)])[0]
-        u[ix.vapour(space)] = np.clip(u[ix.vapour(space)], 1.0, full)
-    set_soil(model, state)
-
-
-def set_soil(model: Model, state: State) -> None:
-    """Bring modes and floor temperature in line with the film temperature T*."""
-    soil, start = model.soil, model.soil_start
-    state.modes = run_modes(model, state.drive)
-    history = (soil.recall @ model.order.before(state.modes)) * (1.0 - start)
-    steady = float(np.sum(soil.recall * soil.drive / (1.0 - soil.keep)))
-    steady_deep = float(np.sum(soil.recall * soil.deep / (1.0 - soil.keep)))
-    flux = (soil.conductance - start * steady) * state.drive - history
-    flux -= (soil.conductance_deep + start * steady_deep) * model.deep
-    state.unknown[model.index.floor] = state.drive - flux / soil.film
 
 
 def first_guess(model: Model, warm: HeatResult | None = None) -> State:

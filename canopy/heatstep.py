@@ -1,0 +1,214 @@
+"""Newton steps of the whole record: answers of each hour, marched in time, limited and applied.
+
+Every hour's answer to its own open amounts, to the soil's history and to each carried quantity of the hour
+before is kept between passes. Once most hours have settled, only those that still move are evaluated anew;
+the others answer as they did. Every end is checked on all hours.
+"""
+
+from __future__ import annotations
+
+from typing import Final
+
+import numpy as np
+from numpy.typing import NDArray
+
+from canopy import vapour as vp
+from canopy.heatmodel import Model
+from canopy.heatregime import PAST_KINK, evaluate, vent_reach
+from canopy.heatrows import FILM, HISTORY, SPEED, Context, Past, State, past, soil_line
+from canopy.march import Response, march, run_modes
+from canopy.newton import Entry, eliminate
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+LARGEST_STEP_K: Final = 8.0
+LARGEST_STEP_PA: Final = 800.0
+SATURATED: Final = 1.004  # a step goes no further beyond saturation; fog keeps the air below
+STILL_K: Final = 1e-4  # an hour that moved less, and whose past moved less, answers as it did
+PASCAL_PER_K: Final = 100.0  # weights of vapour, opening and film in that test
+OPENING_PER_K: Final = 0.1
+FILM_PER_K: Final = 1e-3
+
+
+def open_by(model: Model, film: Floats, c: Context) -> Floats:
+    """Largest open amount over the rows of each hour, W/m2 (regime rows by their weights)."""
+    error = np.abs(c.system.residual[0])
+    for row in c.system.residual[1:]:
+        np.maximum(error, np.abs(row), out=error)
+    water = np.abs(c.film_after - film) * (vp.LATENT_HEAT * model.cover_size / model.step_s)
+    return np.maximum(error, water)
+
+
+def right_sides(model: Model, c: Context, alone: bool) -> list[list[Entry]]:
+    """Columns: residual, then (unless `alone`) soil history, each store's hour before, film before."""
+    ix, n = model.index, c.n
+    if alone:
+        return [[row.copy()] for row in c.system.residual]
+    sides: list[list[Entry]] = []
+    for row in range(n):
+        a = c.system.slope[row]
+        history, film = a[n + HISTORY], a[n + FILM]
+        line: list[Entry] = [c.system.residual[row].copy(), None if history is None else -history]
+        for store in ix.stores:
+            entry: Entry = None
+            if store == row:
+                entry = model.capacity[row].copy()
+                if row == ix.air0_vapour:
+                    entry *= vp.mixing_ratio(c.before[row], model.pressure)[1]
+                if row == ix.pipe:
+                    entry *= c.pipe_keeps
+            line.append(entry)
+        line.append(None if film is None else -film)
+        sides.append(line)
+    return sides
+
+
+def film_line(model: Model, film: Floats, c: Context, x: list[list[Entry]]) -> list[Floats]:
+    """The film's own row after elimination, for every right-hand side."""
+    by_before, by_inflow = c.film_slopes
+    totals: dict[int, Floats] = {}
+    for column, slope in c.inflow_slopes:
+        parts = [(column, slope)]
+        if column == c.n + SPEED:
+            parts = [(k, slope * s) for k, s in c.speed_slopes]
+        for k, value in parts:
+            totals[k] = totals[k] + value if k in totals else value
+    out = []
+    for column in range(len(x[0])):
+        value = np.zeros(model.hours)
+        for k, slope in totals.items():
+            entry = x[k][column]
+            if entry is not None:
+                value += slope * entry
+        out.append(by_inflow * value)
+    out[0] += c.film_after - film
+    if len(out) > 1:
+        out[-1] += by_before
+    return out
+
+
+class Stepper:
+    """Newton passes of one record; the state is changed in place."""
+
+    def __init__(self, model: Model, state: State) -> None:
+        """Keep room for the answers of every hour."""
+        ix = model.index
+        self.model, self.state = model, state
+        self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns
+        self.answer = np.zeros((ix.size + 1, len(self.carried) + 2, model.hours))
+        self.active: Ints | None = None  # None: all hours
+
+    def look(self) -> tuple[Context, Floats, Past]:
+        """Evaluate every hour: context, open amounts, past."""
+        gone = past(self.model, self.state)
+        context = evaluate(self.model, self.state.unknown, gone)
+        return context, open_by(self.model, self.state.film, context), gone
+
+    def apart(self, c: Context) -> None:
+        """One step of every hour by itself, the past held."""
+        m, ix = self.model, self.model.index
+        slopes = [row[: c.n] for row in c.system.slope]
+        x = eliminate(slopes, right_sides(m, c, True), vent_reach(c), m.hours)
+        film = film_line(m, self.state.film, c, x)[0]
+        steps = [np.zeros(m.hours) if row[0] is None else row[0] for row in x]
+        conductance, _ = soil_line(c)
+        self._apply([*steps, film], (1.0 + conductance / m.soil.film) * steps[ix.floor])
+
+    def _learn(self, model: Model, film: Floats, c: Context, at: Ints | slice) -> None:
+        """Keep the answers of the hours that were evaluated."""
+        slopes = [row[: c.n] for row in c.system.slope]
+        x = eliminate(slopes, right_sides(model, c, False), vent_reach(c), model.hours)
+        x.append(list(film_line(model, film, c, x)))
+        for k, row in enumerate(x):
+            for j, entry in enumerate(row):
+                self.answer[k, j, at] = 0.0 if entry is None else entry
+
+    def step(self, c: Context, error: Floats) -> None:
+        """One marched step from a full evaluation."""
+        self._learn(self.model, self.state.film, c, slice(None))
+        self._march(error)
+
+    def step_moving(self) -> None:
+        """One marched step that evaluates only the hours that still move."""
+        at = self.active
+        if at is None:
+            raise ValueError("a full step comes first")
+        gone = past(self.model, self.state).take(at)
+        part = self.model.take(at)
+        context = evaluate(part, [u[at] for u in self.state.unknown], gone)
+        film = self.state.film[at]
+        self.answer[:, 0, :] = 0.0
+        self._learn(part, film, context, at)
+        error = np.zeros(self.model.hours)
+        error[at] = open_by(part, film, context)
+        self._march(error)
+
+    def _march(self, error: Floats) -> None:
+        m, ix = self.model, self.model.index
+        rows = [*self.carried, ix.floor]
+        picked = self.answer[rows]
+        start, soil = m.soil_start, m.soil
+        conductance = soil.conductance - start * float(np.sum(soil.recall * soil.drive / (1.0 - soil.keep)))
+        response = Response(
+            picked[:, 0], picked[:, 1], picked[:, 2:],
+            1.0 + conductance / (soil.film - conductance), -(1.0 - start) / (soil.film - soil.conductance),
+        )  # fmt: skip
+        carried, recalled, drive = march(m, response)
+        shifted = m.order.before(carried) * (1.0 - start)
+        steps: list[Floats] = [carried[0]] * (ix.size + 1)
+        for place, row in enumerate(self.carried):
+            steps[row] = carried[place]
+        for row in range(ix.size):
+            if row not in self.carried:
+                a = self.answer[row]
+                steps[row] = a[0] + a[1] * recalled + np.einsum("kn,kn->n", a[2:], shifted)
+        moved = self._apply(steps, drive)
+        moving = (np.maximum(moved, m.order.before(moved)) > STILL_K) | (error > STILL_K)
+        self.active = np.flatnonzero(moving)
+
+    def _apply(self, steps: list[Floats], drive: Floats) -> Floats:
+        """Limit and add a step; returns how far each hour moved, in K."""
+        m, ix, s = self.model, self.model.index, self.state
+        vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
+        size, moved = np.ones(m.hours), np.abs(steps[ix.size]) / FILM_PER_K
+        for k in range(ix.size):
+            step = np.abs(steps[k])
+            if k == ix.vent:
+                np.maximum(moved, step / OPENING_PER_K, out=moved)
+                continue
+            np.maximum(size, step / (LARGEST_STEP_PA if k in vapours else LARGEST_STEP_K), out=size)
+            np.maximum(moved, step / PASCAL_PER_K if k in vapours else step, out=moved)
+        share = 1.0 / size
+        for k in range(ix.size):
+            s.unknown[k] = s.unknown[k] + share * steps[k]
+        s.film = np.clip(s.film + share * steps[ix.size], 0.0, vp.FILM_MAX_KG_M2)
+        s.drive = s.drive + np.clip(share * drive, -LARGEST_STEP_K, LARGEST_STEP_K)
+        keep_in_range(m, s, vapours)
+        return moved
+
+
+def keep_in_range(model: Model, state: State, vapours: set[int]) -> None:
+    """Hold unknowns in the range where the formulas mean something, and the soil in line with its drive."""
+    ix, u = model.index, state.unknown
+    for k in range(ix.size):
+        if k == ix.vent:
+            u[k] = np.clip(u[k], -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
+        elif k not in vapours:
+            u[k] = np.clip(u[k], -80.0, 110.0)
+    for space in range(ix.screens + 1):
+        full = SATURATED * vp.saturation(u[ix.air(space)])[0]
+        u[ix.vapour(space)] = np.clip(u[ix.vapour(space)], 1.0, full)
+    set_soil(model, state)
+
+
+def set_soil(model: Model, state: State) -> None:
+    """Bring modes and floor temperature in line with the film temperature T*."""
+    soil, start = model.soil, model.soil_start
+    state.modes = run_modes(model, state.drive)
+    history = (soil.recall @ model.order.before(state.modes)) * (1.0 - start)
+    steady = float(np.sum(soil.recall * soil.drive / (1.0 - soil.keep)))
+    steady_deep = float(np.sum(soil.recall * soil.deep / (1.0 - soil.keep)))
+    flux = (soil.conductance - start * steady) * state.drive - history
+    flux -= (soil.conductance_deep + start * steady_deep) * model.deep
+    state.unknown[model.index.floor] = state.drive - flux / soil.film
