@@ -3,11 +3,8 @@
 from __future__ import annotations
 
 import shutil
-import sys
 import time
-from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
-from pathlib import Path
+from collections.abc import Sequence
 from typing import TextIO
 
 from canopy.run import Run
@@ -44,7 +41,15 @@ def result_table(run: Run) -> str:
     energy = show.text("kWh/m2")
     units = ("", "% of outside", show.text("mol/m2"), energy, energy, show.text("W/m2"), show.text("kW"))
     title = f"{plain(run.study.keys.title, 100)} · {plain(run.weather.title, 60)} · totals {period(run)}"
-    return "\n".join([title, "", *_lines(head, units, rows)])
+    return "\n".join([title, "", *_lines(head, units, rows), *_notes(run)])
+
+
+def _notes(run: Run) -> list[str]:
+    if run.weather.clear_sky:
+        return ["", "A computed clear-sky record: light is an upper bound."]
+    if run.weather.typical:
+        return ["", "A typical weather year: extremes are removed; size by the design night and local codes."]
+    return []
 
 
 def _boilers(run: Run) -> list[float]:
@@ -61,27 +66,6 @@ def _row(one: Summary, boiler: float, show: Display) -> tuple[str, ...]:
         show.bare(one.peak_w, "W/m2"),
         show.bare(boiler, "kW"),
     )
-
-
-def show(run: Run, files: Sequence[Path]) -> None:
-    """Print the result and where the files are."""
-    print(result_table(run))
-    if run.weather.clear_sky:
-        print("\nA computed clear-sky record: light is an upper bound.")
-    if run.weather.typical:
-        print("\nA typical weather year: extremes are removed; size from the design night, with local codes.")
-    names = ", ".join(path.name for path in files[1:])
-    print(f"\n{files[0]}: the report\nbeside it: {names}")
-
-
-@contextmanager
-def progress() -> Iterator[StageLine]:
-    """Give a function that says on stderr what is being done; the line is cleared at the end."""
-    line = StageLine(sys.stderr)
-    try:
-        yield line
-    finally:
-        line.done()
 
 
 class StageLine:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import io
 from dataclasses import replace
-from pathlib import Path
 from typing import cast
 
 import numpy as np
@@ -41,7 +40,7 @@ from reports.savings import LOSS_PATHS, saving
 from reports.season import in_order
 from reports.sections_size import peaks_as_screens_open
 from reports.summary import beaten, house_differences, summaries
-from reports.terminal import StageLine, plain, progress, result_table, show
+from reports.terminal import StageLine, plain, result_table
 from tests.reportcase import Fake, fakes, make_run
 
 
@@ -239,19 +238,21 @@ def test_the_terminal_table_fits_and_carries_no_control_characters(run: Run) -> 
     assert plain("a" * 50, 10) == "a" * 9 + "…"
 
 
-def test_the_end_of_a_run_says_where_the_files_are(run: Run, capsys: pytest.CaptureFixture[str]) -> None:
-    show(run, [Path("out/report.html"), Path("out/daily.csv"), Path("out/run.json")])
-    said = capsys.readouterr().out
-    assert "out/report.html: the report" in said
-    assert "beside it: daily.csv, run.json" in said
-    assert "typical weather year" in said
+def test_the_terminal_names_the_kind_of_weather(run: Run) -> None:
+    assert "typical weather year" in result_table(run)
+    clear = replace(run, weather=replace(run.weather, clear_sky=True))
+    assert "upper bound" in result_table(clear)
+    measured = replace(run, weather=replace(run.weather, typical=False))
+    assert "weather year" not in result_table(measured)
 
 
-def test_progress_is_one_line_per_stage_in_a_pipe(capsys: pytest.CaptureFixture[str]) -> None:
-    with progress() as say_stage:
-        say_stage("weather")
-        say_stage("single \x1b[31mglass (1 of 2)")
-    lines = capsys.readouterr().err.splitlines()
+def test_progress_is_one_line_per_stage_in_a_pipe() -> None:
+    stream = io.StringIO()
+    stage = StageLine(stream)
+    stage("weather")
+    stage("single \x1b[31mglass (1 of 2)")
+    stage.done()
+    lines = stream.getvalue().splitlines()
     assert [line.split(" s  ")[1] for line in lines] == ["weather", "single ?[31mglass (1 of 2)"]
 
 
