@@ -56,8 +56,8 @@ def test_days_and_months_are_the_hours_added_up(run: Run) -> None:
         frame = pd.DataFrame(dict(candidate.hourly), index=pd.DatetimeIndex(run.time))
         for day, column, how in DAILY:
             series = frame[column.name]
-            scale = {"kwh": 1e-3, "mol": 3600e-6}.get(how, 1.0)
-            method = {"kwh": "sum", "mol": "sum", "hours": "sum"}.get(how, how)
+            scale = {"kwh": 1e-3, "mol": 3600e-6, "degree_days": 1 / 24}.get(how, 1.0)
+            method = how if how in ("mean", "min", "max") else "sum"
             for table, rule in ((candidate.daily, "D"), (candidate.monthly, "MS")):
                 want = getattr(series.resample(rule), method)() * scale
                 np.testing.assert_allclose(table[day], want, rtol=1e-9, atol=1e-9)
@@ -72,17 +72,45 @@ def test_the_year_is_whole(run: Run) -> None:
 
 
 def test_outside_light_against_an_independent_calculation(run: Run, glass: CandidateRun) -> None:
-    # SPECTRL2 (Bird & Riordan 1986) for a clear sky in pvlib, hour by hour; photons 400-700 nm per joule
-    # of .28-2.8 µm, times the shipped file's own global radiation; cloud raises it by a few per cent.
-    data, meta = pvlib.iotools.read_tmy3(
-        Path(pvlib.__path__[0]) / "data" / "723170TYA.CSV", coerce_year=1990, map_variables=True
-    )
-    ghi = data["ghi"].to_numpy(float)
-    dli_out = ghi * 2.0  # µmol per joule of global: within 1.97-2.10, Theor. Appl. Climatol. 74:227
-    months = (data.index - pd.Timedelta("30min")).month.to_numpy()
-    want = np.array([dli_out[months == m].sum() for m in range(1, 13)]) * 3600e-6
-    np.testing.assert_allclose(glass.monthly["outside_par_mol_m2"], want, rtol=0.03)
+    # SPECTRL2 (Bird & Riordan 1986) called by pvlib for every hour of the shipped file: photons 400-700 nm
+    # per joule of .28-2.8 µm under a clear sky, times the file's global radiation; cloud raises the photon
+    # share by (global / clear-sky global)^-.07 (PAR under cloud, Theor. Appl. Climatol. 74:227)
+    file = Path(pvlib.__path__[0]) / "data" / "723170TYA.CSV"
+    data, meta = pvlib.iotools.read_tmy3(file, coerce_year=1990, map_variables=True)
     assert meta["USAF"] == 723170
+    sun = pvlib.solarposition.get_solarposition(
+        data.index - pd.Timedelta("30min"), meta["latitude"], meta["longitude"], meta["altitude"]
+    )
+    sun = sun[sun["apparent_zenith"] < 88.0].reindex(sun.index)
+    ghi = data["ghi"].to_numpy(float)
+    pressure = data["pressure"].to_numpy(float) * 100.0
+    zenith = sun["apparent_zenith"].to_numpy()
+    spectrum = pvlib.spectrum.spectrl2(
+        apparent_zenith=zenith,
+        aoi=zenith,
+        surface_tilt=0,
+        ground_albedo=0.2,
+        surface_pressure=pressure,
+        relative_airmass=pvlib.atmosphere.get_relative_airmass(zenith, "kasten1966"),
+        precipitable_water=np.maximum(data["precipitable_water"].to_numpy(float), 0.1),
+        ozone=0.31,
+        aerosol_turbidity_500nm=0.12,
+        dayofyear=data.index.day_of_year.to_numpy(),
+    )
+    wave = spectrum["wavelength"]
+    flux = np.nan_to_num(spectrum["poa_global"])
+    fine = np.arange(280.0, 2800.5, 2.0)
+    rows = np.array([np.interp(fine, wave, column) for column in flux.T])
+    par = (fine >= 400.0) & (fine <= 700.0)
+    photons = (rows * fine * par).sum(1) / 119.627  # µmol per J: wavelength in nm over h c N_A
+    clear = rows.sum(1)
+    lit = clear > 0
+    per_joule = np.where(lit, photons / np.where(lit, clear, 1.0), 2.0)
+    cloud = np.clip(ghi / np.maximum(run.weather.ghi_clear, 1.0), 0.1, 1.0) ** -0.07
+    micromol = ghi * per_joule * cloud
+    months = (data.index - pd.Timedelta("30min")).month.to_numpy()
+    want = np.array([micromol[months == m].sum() for m in range(1, 13)]) * 3600e-6
+    np.testing.assert_allclose(glass.monthly["outside_par_mol_m2"], want, rtol=0.03)
 
 
 def test_par_share_of_the_year(glass: CandidateRun) -> None:
