@@ -88,12 +88,24 @@ def _endless(q: Floats, keep: float) -> float:
     """Return the largest discounted mean load over endless windows of a repeating record."""
     if keep == 1.0:
         return float(q.mean())
-    from scipy.signal import lfilter
-
-    once = lfilter([1.0], [1.0, -keep], q)
+    once = _fading_sum(q, keep)
     start = once[-1] / (1.0 - keep ** len(q))  # content carried round the year
     settled = once + start * keep ** np.arange(1, len(q) + 1)
     return float(settled.max() * (1.0 - keep))
+
+
+def _fading_sum(q: Floats, keep: float) -> Floats:
+    """Return y[t] = keep y[t - 1] + q[t], from an empty store; blocks keep the powers small."""
+    block = max(1, min(len(q), int(_BLOCK_EXPONENT / -np.log(keep))))
+    power = keep ** np.arange(1, block + 1)
+    out = np.empty(len(q))
+    carry = 0.0
+    for first in range(0, len(q), block):
+        part = q[first : first + block]
+        faded = power[: len(part)]
+        out[first : first + block] = faded * (carry + np.cumsum(part / faded))
+        carry = float(out[first + len(part) - 1])
+    return out
 
 
 def _worst_window(net: Floats, full: float, keep: float) -> tuple[float, int]:
