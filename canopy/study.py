@@ -139,7 +139,7 @@ class HouseKeys(Section):
     length: Annotated[float, Field(ge=3, le=1000)] = 60.0
     gutter_height: Annotated[float, Field(ge=0.0, le=12)] = 4.5
     pitch: Annotated[float, Field(ge=0, le=60)] | None = None
-    pitch_other: Annotated[float, Field(ge=0, le=85)] | None = None
+    pitch_other: Annotated[float, Field(ge=0, le=60)] | None = None
     rise: Annotated[float, Field(gt=0, le=15)] | None = None
     ridge_azimuth: Annotated[float, Field(ge=0, le=360)] = 0.0
     gutter_width: Annotated[float, Field(ge=0, le=2)] = 0.25

@@ -73,14 +73,14 @@ def _allowed(where: tuple[str | int, ...]) -> str:
 
 
 def _unknown(key: str, where: tuple[str | int, ...]) -> str:
-    """Say that a key is unknown: the nearest one here, else another table that has it, else all of them."""
+    """Say that a key is unknown: another table that has it, else the nearest one here, else what is here."""
     model = model_at(StudyKeys, where)
     known = tuple(model.model_fields) if model is not None else ()
-    if hint := nearest(key, known):
-        return f"unknown key{hint}"
     home = next((table for table in StudyKeys.model_fields if _has(table, key)), "")
     if home:
         return f"unknown key; it belongs in [{home}]"
+    if hint := nearest(key, known):
+        return f"unknown key{hint}"
     more = ", ..." if len(known) > LISTED else ""
     return f"unknown key; known here: {', '.join(known[:LISTED])}{more}"
 

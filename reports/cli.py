@@ -147,17 +147,17 @@ def main() -> None:
         if hasattr(stream, "reconfigure"):  # names that the terminal cannot show come out as "?"
             stream.reconfigure(errors="replace")
     signal.signal(signal.SIGTERM, _stop)
-    sys.exit(_code(sys.argv[1:] or ["--help"]))
+    sys.exit(exit_code(sys.argv[1:] or ["--help"]))
 
 
 def _stop(*_: object) -> None:
     raise KeyboardInterrupt
 
 
-def _code(args: list[str]) -> int:
-    """Return the exit code of one command; every fault is said in one line."""
+def exit_code(args: list[str]) -> int:
+    """Run one command and return its exit code; every fault is said in one line."""
     try:
-        done = app(args, standalone_mode=False)
+        done = app(args, prog_name="canopy-budget", standalone_mode=False)
         if sys.stdout is not None:
             sys.stdout.flush()
         if done == STOPPED:

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import os
 import re
+import signal
 import subprocess
 import sys
 from pathlib import Path
 
 import pytest
 
+from reports.cli import exit_code
 from reports.studyfiles import study_text
 from tests.conftest import Cli
 
@@ -41,7 +43,7 @@ def test_help_names_every_command(cli: Cli) -> None:
     for name in COMMANDS:
         assert f" {name} " in done.stdout
     for name in COMMANDS:
-        assert cli(name, "--help").returncode == 0
+        assert exit_code([name, "--help"]) == 0
 
 
 @pytest.mark.parametrize("args", [["--help"], ["check", "STARTER"]])
@@ -114,15 +116,26 @@ BAD = {
 
 
 @pytest.mark.parametrize("case", BAD)
-def test_bad_studies_end_with_one_short_message(cli: Cli, tmp_path: Path, case: str) -> None:
+def test_bad_studies_end_with_one_short_message(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], case: str
+) -> None:
     old, new, parts = BAD[case]
     text = study_text("starter")
     assert old in text
     path = _study(tmp_path, text.replace(old, new, 1))
-    _refused(cli("check", path), *parts)
     out = tmp_path / "out"
-    _refused(cli("run", path, "--out", out), *parts)
+    for args in (["check", str(path)], ["run", str(path), "--out", str(out)]):
+        code = exit_code(args)
+        said = capsys.readouterr()
+        _refused(subprocess.CompletedProcess(args, code, said.out, said.err), *parts)
     assert not out.exists()
+
+
+def test_a_bad_study_from_the_shell(cli: Cli, tmp_path: Path) -> None:
+    path = _study(tmp_path, study_text("starter").replace("spans = 10", "spanz = 10", 1))
+    _refused(cli("check", path), "house -> spanz")
+    _refused(cli("run", path, "--out", tmp_path / "out"), "house -> spanz")
+    assert not (tmp_path / "out").exists()
 
 
 @pytest.mark.parametrize(
@@ -172,6 +185,82 @@ def test_bands_of_black_surfaces(cli: Cli) -> None:
     _refused(cli("bands", "--temperature", "-5"), "--temperature")
     _refused(cli("bands", "--temperature", "300", "--edges", "14,8"), "rise")
     _refused(cli("bands", "--temperature", "300", "--edges", "8,x"), "'x'")
+
+
+USAGE = {
+    "no such command": (["chek", "x.toml"], ["chek", "--help"]),
+    "no output folder": (["run", "x.toml"], ["run: missing option '--out'", "canopy-budget run --help"]),
+    "no file": (["check"], ["check: missing argument"]),
+    "no such option": (["check", "x.toml", "--quick"], ["--quick"]),
+    "not a number": (["bands", "--temperature", "warm"], ["--temperature"]),
+    "one too many": (["check", "a", "b"], ["(b)"]),
+    "empty folder": (["demo", "--out", ""], ["--out", "name a folder"]),
+    "nothing to plot": (["coverings", "--plot", "x.html"], ["--plot"]),
+    "unknown covering": (["coverings", "glass-cleer-4"], ['did you mean "glass-clear-4"']),
+}
+
+
+@pytest.mark.parametrize("case", USAGE)
+def test_wrong_command_lines_end_with_one_line(capsys: pytest.CaptureFixture[str], case: str) -> None:
+    args, parts = USAGE[case]
+    code = exit_code(args)
+    said = capsys.readouterr()
+    _refused(subprocess.CompletedProcess(args, code, said.out, said.err), *parts)
+
+
+def test_no_arguments_show_the_help(cli: Cli) -> None:
+    done = cli()
+    assert done.returncode == 0
+    assert "Usage" in done.stdout
+
+
+def test_names_that_a_terminal_cannot_show(tmp_path: Path) -> None:
+    """Spaces, signs beyond ASCII and bytes that are no text in a path; a terminal that knows ASCII only."""
+    name = os.fsencode(tmp_path) + b"/a b \xe2\x98\x83 \xff.toml"
+    Path(os.fsdecode(name)).write_text(study_text("starter"), encoding="utf-8")
+    for coding in ("utf-8", "ascii"):
+        done = subprocess.run(
+            [sys.executable, "-c", "from reports.cli import main; main()", "check", name],
+            capture_output=True,
+            env={**os.environ, "PYTHONIOENCODING": coding},
+            check=False,
+        )
+        assert done.returncode == 0, done.stderr
+        assert b"in order. My coverings" in done.stdout
+
+
+@pytest.mark.parametrize("sign", [signal.SIGINT, signal.SIGTERM])
+def test_a_stopped_run_leaves_nothing(tmp_path: Path, sign: signal.Signals) -> None:
+    path = _study(tmp_path, study_text("demo"))
+    command = [sys.executable, "-c", "from reports.cli import main; main()", "run", path, "--out", "out/in"]
+    with subprocess.Popen(command, cwd=tmp_path, stdout=-1, stderr=-1, text=True) as process:
+        assert process.stderr is not None
+        process.stderr.readline()  # the first stage is under way
+        process.send_signal(sign)
+        _, said = process.communicate(timeout=60)
+    assert process.returncode == 130
+    assert said.splitlines()[-1] == "canopy-budget: stopped; nothing was written"
+    assert [p.name for p in tmp_path.iterdir()] == [path.name]
+
+
+def test_a_reader_that_goes_away(tmp_path: Path) -> None:
+    path = _study(tmp_path, study_text("starter"))
+    read, write = os.pipe()
+    os.close(read)
+    command = [sys.executable, "-c", "from reports.cli import main; main()", "check", path]
+    done = subprocess.run(command, stdout=write, stderr=subprocess.PIPE, text=True, check=False)
+    os.close(write)
+    assert done.returncode == 141
+    assert done.stderr == ""
+
+
+def test_a_disk_that_is_full(tmp_path: Path) -> None:
+    path = _study(tmp_path, study_text("starter"))
+    command = [sys.executable, "-c", "from reports.cli import main; main()", "check", path]
+    with open("/dev/full", "w", encoding="utf-8") as full:
+        done = subprocess.run(command, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert done.returncode == 2
+    assert "no space left" in done.stderr
 
 
 def test_a_bug_says_so(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
