@@ -52,9 +52,41 @@ def _deep_flux(model: Model, state: State, c: Context) -> Floats:
     return np.asarray(soil.out_drive * state.drive + soil.out_recall @ before + soil.out_deep * model.deep)
 
 
+def _state_of(m: Model, c: Context, covers: list[int], screens: list[int]) -> dict[str, Floats]:
+    """Temperatures, humidity, wetness, openings."""
+    ix, u = m.index, c.u
+    full, _ = c.saturation[ix.house_air]
+    return {
+        "temp_air": u[ix.house_air],
+        "temp_leaf": u[ix.leaf],
+        "temp_leaf_sunlit": _sunlit_leaf(m, c),
+        "temp_floor": u[ix.floor],
+        "temp_covering": np.array([u[k] for k in covers]),
+        "temp_screen": np.array([u[k] for k in screens]).reshape(ix.screens, m.hours),
+        "temp_pipe": u[ix.pipe],
+        "vapour_pressure": u[ix.air0_vapour],
+        "relative_humidity": 100.0 * u[ix.air0_vapour] / full,
+        "wet": c.wet,
+        "vent_open": np.clip(c.system.flows["opening"], 0.0, 1.0),
+        "screen_drawn": m.drawn * (1.0 - c.gap),
+    }
+
+
+def _water_of(m: Model, c: Context) -> dict[str, Floats]:
+    """Water fluxes, kg m-2 h-1, and air changes. Dew on leaves is negative transpiration."""
+    f, zero = c.system.flows, np.zeros(m.hours)
+    condensed = np.maximum(f["condense_cover"], 0.0) + f.get("condense_screen", zero)
+    return {
+        "transpiration": KG_H * f["transpiration"],
+        "floor_evaporation": KG_H * f.get("evaporation", zero),
+        "condensation": KG_H * condensed,
+        "air_changes_per_h": (f["vent_m3"] + f["leak_m3"]) * 3600.0 / m.case.shell.mean_height_m,
+    }
+
+
 def result(model: Model, state: State, c: Context, passes: int, retried: int) -> HeatResult:
     """Bring a closed iterate into the record, in hour order."""
-    m, ix, f, u = model, model.index, c.system.flows, c.u
+    m, ix, f = model, model.index, c.system.flows
     back = m.order.back
     zero = np.zeros(m.hours)
 
@@ -86,32 +118,14 @@ def result(model: Model, state: State, c: Context, passes: int, retried: int) ->
     heat, solar = f["heat"], f["solar"]
     closure = heat + solar - sum(terms.values(), zero)
     humid = np.where(c.humid & (f["opening"] > 0.0), np.clip(of("vent_dry"), 0.0, np.maximum(heat, 0.0)), 0.0)
-    drawn = m.drawn * (1.0 - c.gap)
     worst = int(np.argmax(np.abs(back(closure))))
-    full, _ = c.saturation[ix.house_air]
-    values = {
-        **terms,
-        "temp_air": u[ix.house_air],
-        "temp_leaf": u[ix.leaf],
-        "temp_leaf_sunlit": _sunlit_leaf(m, c),
-        "temp_floor": u[ix.floor],
-        "temp_covering": np.array([u[k] for k in covers]),
-        "temp_screen": np.array([u[k] for k in screens]).reshape(ix.screens, m.hours),
-        "temp_pipe": u[ix.pipe],
-        "vapour_pressure": u[ix.air0_vapour],
-        "relative_humidity": 100.0 * u[ix.air0_vapour] / full,
-        "wet": c.wet,
+    values = {**terms, **_state_of(m, c, covers, screens), **_water_of(m, c)}
+    values |= {
         "solar": solar,
         "heat_delivered": np.maximum(heat, 0.0),
         "heat_for_humidity": humid,
         "through_loss": of("through"),
         "skin_loss": of("skin"),
-        "transpiration": KG_H * of("transpiration"),
-        "floor_evaporation": KG_H * of("evaporation"),
-        "condensation": KG_H * (np.maximum(of("condense_cover"), 0.0) + of("condense_screen")),
-        "vent_open": np.clip(f["opening"], 0.0, 1.0),
-        "screen_drawn": drawn,
-        "air_changes_per_h": (f["vent_m3"] + f["leak_m3"]) * 3600.0 / m.case.shell.mean_height_m,
         "closure": closure,
     }
     return HeatResult(
