@@ -21,7 +21,7 @@ QUOTED: Final = ("par_normal", "par_hemispherical", "haze", "thermal_transmittan
 
 
 def check_text(path: Path) -> str:
-    """Return what a study will compute, in lines; reads everything but the weather and the CSV files.
+    """Return what a study will compute, in lines; reads everything but the weather.
 
     Errors: UserError as `load_study`, and for files that are not there.
     """

@@ -32,7 +32,7 @@ def write_starter(path: Path) -> None:
 
 
 def check_files(study: Study) -> None:
-    """Refuse a study that names files that are not there (UserError)."""
+    """Refuse a study that names files that are not there, or spectra that cannot be used (UserError)."""
     from weather.typical import shipped_names
 
     keys = study.keys.weather
@@ -47,6 +47,23 @@ def check_files(study: Study) -> None:
         if name is not None and not _is_there(study.folder / name):
             shown = one_line(str(study.folder / name), 200)
             raise UserError(f"{study.label}: {crumb}: no such file: {shown}")
+    for crumb, name in names:
+        if name is not None and not crumb.startswith("weather"):
+            _check_spectrum(study.folder / name, f"{study.label}: {crumb}", crumb.endswith("leaf"))
+
+
+def _check_spectrum(path: Path, where: str, leaf: bool) -> None:
+    """Read a CSV of a covering or leaf, so that no candidate is computed before a bad one is found."""
+    from canopy.labcsv import read_lab_csv
+    from canopy.leaves import read_spectrum
+
+    try:
+        if leaf:
+            read_spectrum(path)
+        else:
+            read_lab_csv(path)
+    except UserError as error:
+        raise UserError(f"{where}: {error}") from None
 
 
 def _csv_names(plan: Plan, study: Study) -> list[tuple[str, str | None]]:

@@ -196,3 +196,25 @@ def test_check_says_what_each_candidate_is(tmp_path: Path) -> None:
         "single glass, night screen, as single glass but:",
     ):
         assert part in said, part
+
+
+SPECTRA = {
+    "covering": (
+        'spectrum = "x.csv"',
+        'covering "own" -> spectrum: x.csv, row 3: found -0.5; transmittance below',
+    ),
+    "leaf": ('crop.leaf = "x.csv"', 'candidate "own" -> crop -> leaf: leaf spectrum x.csv, row 3: '),
+    "walls": (
+        'house.wall_covering = "x.csv"',
+        'candidate "own" -> house -> wall_covering: x.csv, row 3: found -0.5',
+    ),
+}
+
+
+@pytest.mark.parametrize("case", SPECTRA)
+def test_check_reads_the_spectra(tmp_path: Path, case: str) -> None:
+    keys, part = SPECTRA[case]
+    rows = "".join(f"{w},0.1,{-0.5 if w == 390 else 0.4}\n" for w in range(380, 2500, 10))
+    (tmp_path / "x.csv").write_text(f"wavelength_nm,reflectance,transmittance\n{rows}", encoding="utf-8")
+    lab = f'{ONE}[[covering]]\nname = "own"\n{keys}\n[[candidate]]\nname = "a"\ncovering = "own"\n'
+    assert part in _refused(tmp_path, lab if case == "covering" else _own(keys))
