@@ -187,7 +187,7 @@ def _other_lines(night: HeatCase, result: HeatResult) -> list[tuple[str, float, 
     dry = per_m3 * changes * shell.mean_height_m * difference
     leak = f"{changes:.2f}/h x {shell.mean_height_m:.2f} m"
     if np.any(night.climate.screen_drawn > 0.0):
-        leak += "; it leaves from above the screen, where air is colder and drier than in the house"
+        leak += "; through the roof it leaves from above the screen, where air is colder and drier"
     else:
         leak += f" x {per_m3:.3f} Wh/m3K x {difference:.1f} K = {dry:.1f} dry, the rest as vapour"
     return [

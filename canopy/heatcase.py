@@ -50,6 +50,7 @@ class Shell:
     leakage_per_hour: float  # air changes per h at 4 m/s and 20 K, closed vents (`exchange`)
     vent_area_ratio: float  # m2 opening per m2 floor, fully open
     vent_factor: float  # discharge left by an insect net: 1 without
+    walls_screened: bool = False  # drawn screens close side walls and gable ends too
 
 
 @dataclass(frozen=True)

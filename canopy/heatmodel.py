@@ -54,6 +54,7 @@ class Model:
     hours: int
     step_s: float
     cover_size: float
+    wall_share: float  # of the covering: not behind ceiling screens
     sky_size: float
     ground_size: float
     exchange: Exchange
@@ -137,6 +138,13 @@ def _planes(model_case: HeatCase, optics: ThermalOptics, gap: Floats, drawn: Flo
     return planes
 
 
+def _wall_share(case: HeatCase) -> float:
+    """Share of the covering (side walls, gable ends) that stays free when screens are drawn."""
+    if case.shell.walls_screened:
+        return 0.0
+    return case.shell.wall_ratio / (case.shell.roof_ratio + case.shell.wall_ratio)
+
+
 def _solver_order(areas: ExchangeAreas, layers: int, screens: int) -> tuple[Floats, Floats]:
     """Reorder surfaces from floor-first to `Index.surfaces` (cover outermost first ... leaf, floor, pipe)."""
     total = 3 + screens + layers
@@ -161,8 +169,15 @@ def _exchange(case: HeatCase, p: Pipes, gap: Floats, drawn: Floats, gap_max: Flo
     k_gap, k_drawn, k_max = cases[0], cases[1:-1], cases[-1]
 
     def areas(optics: ThermalOptics, opened: Floats) -> tuple[Floats, Floats]:
-        stack = _planes(case, optics, k_gap, k_drawn * (1.0 - opened), p)
-        return _solver_order(exchange_areas(stack), layers, screens)
+        pair, outside = _solver_order(
+            exchange_areas(_planes(case, optics, k_gap, k_drawn * (1.0 - opened), p)), layers, screens
+        )
+        if not screens:
+            return pair, outside
+        bare = exchange_areas(_planes(case, optics, k_gap, 0.0 * k_drawn, p))  # walls: no screen before them
+        walls = _wall_share(case)
+        free, free_outside = _solver_order(bare, layers, screens)
+        return (1.0 - walls) * pair + walls * free, (1.0 - walls) * outside + walls * free_outside
 
     pair, outside = areas(case.covering.dry, 0.0 * k_max)
     wet = [x - y for x, y in zip(areas(case.covering.wet, 0.0 * k_max), (pair, outside), strict=True)]
@@ -262,7 +277,7 @@ def build_model(case: HeatCase, bands: BandSet = THERMAL) -> Model:
     has_leaf = (order.into(case.crop.lai) > 0.0).astype(float)
     return Model(
         case=case, bands=bands, order=order, index=index, hours=hours, step_s=out.step_s,
-        cover_size=size, sky_size=sky_size, ground_size=size - sky_size,
+        cover_size=size, wall_share=_wall_share(case), sky_size=sky_size, ground_size=size - sky_size,
         exchange=_exchange(case, tubes, order.into(case.crop.gap), drawn, gap_max),
         incident=sky_size * sky + (size - sky_size) * emission, sky=sky, outside_emission=emission,
         temp_out=temp_out, vapour_out=e_out, ratio_out=vp.mixing_ratio(e_out, pressure)[0],

@@ -107,19 +107,25 @@ class Context:
 
 
 def air_change(c: Context) -> None:
-    """Leakage and vents: between the space under the covering and outside; also the air speed inside."""
+    """Leakage through roof and walls, vents in the roof; also the air speed inside."""
     m, ix, shell = c.model, c.ix, c.model.case.shell
     top = ix.screens
+    leaked = np.zeros(m.hours)
+    for space, share in _inner_faces(m):
+        at = ix.air(space)
+        leak, by_diff = ex.leakage(
+            share * shell.leakage_per_hour, shell.mean_height_m, m.wind, c.u[at] - m.temp_out
+        )
+        c.air_flow(m.density * leak, [(at, m.density * by_diff)], space, None, "leak")
+        leaked += leak
     air = ix.air(top)
     diff = c.u[air] - m.temp_out
-    leak, by_diff = ex.leakage(shell.leakage_per_hour, shell.mean_height_m, m.wind, diff)
-    c.air_flow(m.density * leak, [(air, m.density * by_diff)], top, None, "leak")
     full, full_slope = ex.vent_flow(shell.vent_area_ratio, shell.vent_factor, m.wind, diff, m.mean_k)
     opening = c.u[ix.vent] - c.gap
     flow, by_temp, by_vent = opening * full, opening * full_slope, (1.0 - c.gap_slope) * full
     slopes = [(air, m.density * by_temp), (ix.vent, m.density * by_vent)]
     c.air_flow(m.density * flow, slopes, top, None, "vent")
-    c.system.flows["vent_m3"], c.system.flows["leak_m3"] = flow, leak
+    c.system.flows["vent_m3"], c.system.flows["leak_m3"] = flow, leaked
     c.system.flows["opening"] = opening
     c.speed, by_flow = ex.air_speed_sq(flow, shell.mean_height_m)
     c.speed_slopes = [(air, by_flow * by_temp), (ix.vent, by_flow * by_vent)]
@@ -139,47 +145,83 @@ def covering(c: Context) -> None:
         total = 1.0 / (1.0 / h + 0.5 * (resistance[k] + resistance[k + 1]))
         by_diff = size * (total + diff * slope * (total / h) ** 2)
         system.flow(size * total * diff, a, b, [(a, by_diff), (b, -by_diff)])
-    last, top = ix.cover(ix.layers - 1), ix.screens
-    air = ix.air(top)
-    diff = c.u[air] - c.u[last]
     forced, by_speed = ex.forced_cube(c.speed)
+    faces = [_face(c, space, share, forced, by_speed) for space, share in _inner_faces(m)]
+    _condense(c, faces)
+
+
+@dataclass(frozen=True)
+class _Face:
+    """Part of the covering's inner face: the space before it, its share, and its convection with slopes."""
+
+    space: int
+    share: float
+    h: Floats
+    by_diff: Floats
+    by_speed: Floats
+
+
+def _inner_faces(m: Model) -> tuple[tuple[int, float], ...]:
+    """Roof over the topmost space; walls beside the house air, since ceiling screens leave them free."""
+    top = m.index.screens
+    if top == 0 or m.wall_share == 0.0:
+        return ((top, 1.0),)
+    return ((top, 1.0 - m.wall_share), (0, m.wall_share))
+
+
+def _face(c: Context, space: int, share: float, forced: Floats, by_speed: Floats) -> _Face:
+    """Inner convection of one part of the covering."""
+    m, ix = c.model, c.ix
+    last, air = ix.cover(ix.layers - 1), ix.air(space)
+    diff = c.u[air] - c.u[last]
     h, by_diff, by_cube = ex.cube_law(m.inner_free, diff, forced)
-    series = 1.0 / (1.0 + 0.5 * h * resistance[-1])
+    series = 1.0 / (1.0 + 0.5 * h * m.case.covering.resistance[-1])
+    size = share * m.cover_size
     total, chain = size * h * series, size * series * series
     slope = total + diff * chain * by_diff
     slopes = [(air, slope), (last, -slope), (c.n + SPEED, diff * chain * by_cube * by_speed)]
-    system.flow(total * diff, air, last, slopes)
-    _condense(c, h, by_diff, by_cube * by_speed)
+    c.system.flow(total * diff, air, last, slopes)
+    return _Face(space, share, h, by_diff, by_cube * by_speed)
 
 
-def _condense(c: Context, h: Floats, by_diff: Floats, by_speed: Floats) -> None:
+def _condense(c: Context, faces: list[_Face]) -> None:
     """Vapour against the inner face (Lewis), the film that it leaves, and what runs off."""
     m, ix = c.model, c.ix
-    last, top = ix.cover(ix.layers - 1), ix.screens
-    air, vapour = ix.air(top), ix.vapour(top)
-    unit = m.lewis * (m.step_s / vp.LATENT_HEAT)
-    excess = c.u[vapour] - c.saturation[last][0]
-    inflow = unit * h * excess
+    last = ix.cover(ix.layers - 1)
+    inflow = np.zeros(m.hours)
+    parts = []
+    c.inflow_slopes = []
+    for face in faces:
+        air, vapour = ix.air(face.space), ix.vapour(face.space)
+        unit = face.share * m.lewis * (m.step_s / vp.LATENT_HEAT)
+        excess = c.u[vapour] - c.saturation[last][0]
+        by_heat = unit * excess * face.by_diff
+        slopes = [
+            (vapour, unit * face.h),
+            (air, by_heat),
+            (last, -unit * face.h * c.saturation[last][1] - by_heat),
+            (c.n + SPEED, unit * excess * face.by_speed),
+        ]
+        value = unit * face.h * excess
+        inflow += value
+        parts.append((vapour, value, slopes))
+        c.inflow_slopes += slopes
     c.inflow = inflow
-    film, uptake, over, by_before, by_inflow = vp.film_step(c.film_before, inflow)
-    held = over <= 0.0
+    film, _, over, by_before, by_inflow = vp.film_step(c.film_before, inflow)
+    taken, by_before_taken, by_inflow_taken = vp.film_share(c.film_before, inflow)
     per_kg = m.cover_size * vp.LATENT_HEAT / m.step_s
-    slopes = [(c.n + INFLOW, per_kg * by_inflow), (c.n + FILM, per_kg * (by_before - 1.0))]
-    c.system.flow(per_kg * uptake, vapour, last, slopes, "condense_cover")
+    for vapour, value, slopes in parts:
+        by = [(column, per_kg * taken * slope) for column, slope in slopes]
+        by.append((c.n + INFLOW, per_kg * value * by_inflow_taken))
+        by.append((c.n + FILM, per_kg * value * by_before_taken))
+        c.system.flow(per_kg * taken * value, vapour, last, by, "condense_cover")
+    held = over <= 0.0
     per_k = m.cover_size * CP_WATER / m.step_s
     warm = c.u[last] - vp.REFERENCE_C
-    lost = np.where(held, 0.0, per_k)
-    lost = lost * warm
+    lost = np.where(held, 0.0, per_k) * warm
     slopes = [(last, per_k * over), (c.n + INFLOW, lost * by_inflow), (c.n + FILM, lost * by_before)]
     c.system.flow(per_k * over * warm, last, None, slopes, "drain")
     c.film_after, c.film_slopes = film, (by_before * held, by_inflow * held)
-    by_heat = unit * excess * by_diff
-    c.inflow_slopes = [
-        (vapour, unit * h),
-        (air, by_heat),
-        (last, -unit * h * c.saturation[last][1] - by_heat),
-        (c.n + SPEED, unit * excess * by_speed),
-    ]
 
 
 def screens(c: Context) -> None:

@@ -94,6 +94,7 @@ def make_shell(plan: Plan, house: House, covering: Covering) -> Shell:
         leakage_per_hour=leakage(plan, covering),
         vent_area_ratio=plan.house.vent_area_fraction,
         vent_factor=INSECT_NET_FACTOR if plan.house.insect_net else 1.0,
+        walls_screened=plan.house.screened_walls,
     )
 
 

@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
 Purpose = Literal["energy", "shade", "blackout"]
 
+CLOSED_SHARE: Final = 0.98  # of an energy screen at its best; seams and edges stay open: common practice
 BLACKOUT_HOURS: Final = (18.0, 8.0)  # civil time, for a short day: common practice
 USED_BY: Final[dict[str, Purpose]] = {
     "close_below_w_m2": "energy",
@@ -56,6 +57,8 @@ def _rule(keys: ScreenKeys | None, purpose: Purpose) -> ScreenRule:
     from canopy.control import ScreenRule
 
     given: dict[str, Any] = {"purpose": purpose}
+    if purpose == "energy":
+        given["share"] = CLOSED_SHARE
     if purpose == "blackout":
         given["hours"] = BLACKOUT_HOURS
     if keys is not None:

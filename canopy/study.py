@@ -152,10 +152,12 @@ class HouseKeys(Section):
     leakage_per_hour: Annotated[float, Field(ge=0, le=20)] | None = None
     vent_area_fraction: Annotated[float, Field(ge=0, le=1)] = 0.15
     insect_net: bool = False
+    screened_walls: bool = False
     wind_exposure: Literal["open", "normal", "sheltered"] = "normal"
     perimeter_loss: Annotated[float, Field(ge=0, le=5)] = 0.8
     wall_covering: Name | None = None
     gable_covering: Name | None = None
+    floor_map: bool = False
     paint: list[list[Any]] = []
 
     @field_validator("paint")

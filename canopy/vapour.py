@@ -147,3 +147,14 @@ def film_step(before: Floats, inflow: Floats) -> tuple[Floats, Floats, Floats, F
     by_before = np.where(patchy, 1.0 / divisor, 1.0)
     by_inflow = np.where(patchy, before / (FILM_FULL_KG_M2 * divisor * divisor), 1.0)
     return free - over, free - before, over, by_before, by_inflow
+
+
+def film_share(before: Floats, inflow: Floats) -> tuple[Floats, Floats, Floats]:
+    """Share of `inflow` that a step of `film_step` really takes up, with its slopes by `before` and `inflow`.
+
+    1 on a fully wet or a collecting face; film / (full - inflow) where patches dry.
+    """
+    patchy = (inflow < 0.0) & (before + inflow < FILM_FULL_KG_M2)
+    room = FILM_FULL_KG_M2 - np.minimum(inflow, 0.0)
+    share = np.where(patchy, before / room, 1.0)
+    return share, np.where(patchy, 1.0 / room, 0.0), np.where(patchy, before / room**2, 0.0)

@@ -62,9 +62,9 @@ def test_isothermal_enclosure_is_at_rest() -> None:
             assert np.abs(temps - temp).max() < 1e-4
 
 
-def u_value(cover: object, form: str = "gable", screens: tuple = (), drawn: float = 0.0) -> float:  # type: ignore[type-arg]
+def u_value(cover: object, form: str = "gable", screens: tuple = (), drawn: float = 0.0, enclosed: bool = True) -> float:  # type: ignore[type-arg]
     """Heat per m2 cover and kelvin of a house without leakage, crop inside, on a night of average cloud."""
-    shell = house(form, leakage_per_hour=0.05, perimeter_loss=0.0)
+    shell = house(form, leakage_per_hour=0.05, perimeter_loss=0.0, walls_screened=enclosed)
     made = case(
         slice(None), cover, screens, weather=steady_night(clear=0.85), shell=shell, heat=18.0, lai=2.0,  # type: ignore[arg-type]
         ground=DRY_GROUND, drawn=drawn, pipe_m=4.0,
@@ -104,6 +104,17 @@ def test_drawn_screens_save_what_was_measured(screen: object, drawn: float, low:
     bare = u_value(GLASS)
     saved = 1.0 - u_value(GLASS, screens=(screen,), drawn=drawn) / bare
     assert low < saved < high
+
+
+def test_walls_that_no_screen_closes_take_their_share_of_the_saving() -> None:
+    # a ceiling screen leaves the walls (here .25 of 1.4 m2 cover per m2 floor) as they are
+    screen = cloth(0.35, 0.15, permeability=1.5)
+    bare, whole, ceiling = (u_value(GLASS, screens=s, drawn=d, enclosed=e) for s, d, e in (
+        ((), 0.0, True), ((screen,), 0.98, True), ((screen,), 0.98, False)
+    ))  # fmt: skip
+    share = 0.25 / 1.4
+    assert (bare - ceiling) / (bare - whole) == pytest.approx(1.0 - share, abs=0.12)
+    assert ceiling > whole
 
 
 def test_a_year_closes_and_repeats() -> None:
@@ -309,6 +320,6 @@ def test_emissive_screen_kills_the_sky() -> None:
     """A perfect mirror under the covering leaves the floor no long-wave way out."""
     mirror = cloth(0.0, 1.0, permeability=0.0, vapour_open=False)
     assert mirror.thermal.transmit == pytest.approx(thermal([0] * 3, [1] * 3).transmit)
-    r = solve(case(slice(None), FILM, (mirror,), weather=steady_night(), shell=house("arch"), drawn=1.0))
+    r = solve(case(slice(None), FILM, (mirror,), weather=steady_night(), shell=house("arch", walls_screened=True), drawn=1.0))
     assert abs(r.through_loss[-1]) < 1e-6
     assert SOIL.wetness > 0.0
