@@ -20,9 +20,10 @@ from canopy.greyband import grey_band
 from canopy.hourly import closures, hourly_columns
 from canopy.ledger import by_group, groups
 from canopy.returns import ManyYears, combine, year_load
-from canopy.run import CandidateRun, Run
+from canopy.run import CandidateRun, Closure, Run
 from canopy.sizecase import SizingShared, size_candidate, sized_load, sizing_shared
 from canopy.studyfile import Study
+from weather.errors import OpenHourError
 from weather.load import WeatherRequest, load_many, load_weather
 from weather.record import Weather
 
@@ -30,6 +31,7 @@ Floats = NDArray[np.float64]
 Indices = NDArray[np.intp]
 Progress = Callable[[str], None]
 PACKAGES = ("canopy-budget", "numpy", "scipy", "pandas", "pvlib", "plotly")
+OPEN_W_M2 = 0.1  # widest gap of any budget in any hour, per m2 floor
 WHOLE_YEAR_H = 8600  # hours from which a record counts as a whole year
 
 
@@ -131,12 +133,23 @@ def _many(done: Budget, place: Place, others: tuple[Place, ...]) -> ManyYears | 
     )
 
 
+def must_close(name: str, closed: tuple[Closure, ...]) -> None:
+    """Refuse a result with a budget that stays open in some hour (OpenHourError)."""
+    for one in closed:
+        if not one.worst_w_m2 <= OPEN_W_M2:
+            raise OpenHourError(
+                f'candidate "{name}", {one.at}: {one.worst_w_m2:.3g} W/m2 stay open in the budget '
+                f'"{one.budget}"; allowed is {OPEN_W_M2:g}'
+            )
+
+
 def _finish(
     done: Budget, place: Place, calendar: Calendar, sizes: SizingShared, many: ManyYears | None
 ) -> CandidateRun:
     weather = place.weather
     hourly = hourly_columns(weather, place.sun, done.light, done.case, done.heat)
     closed = closures(weather, hourly, done.light, done.heat)
+    must_close(done.plan.name, closed)
     cover = done.covering
     nominal = u_value(cover.thermal_dry, cover.resistance, cover.gaps)
     sizing, design = size_candidate(done.plan.heating, done.case, done.heat, sizes, nominal, solve, many)
