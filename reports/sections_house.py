@@ -13,6 +13,7 @@ from reports import sentences as say
 from reports.blocks import Block, Chooser, Each, Figure, Row, Section, Table, Text
 from reports.display import NONE, Display, number, percent
 from reports.figures import axis, layout, line, marks_of, month_labels
+from reports.figures_floor import floor_blocks
 from reports.figures_sky import sky_figure, turn_rows, turn_words, turned
 from reports.summary import Summary
 
@@ -68,7 +69,6 @@ def height_figure(run: Run, labels: Sequence[str], shares: Sequence[Floats]) -> 
 
 def house_light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     """Return what shape, structure and covering together do to light."""
-    del show
     labels, step = sun_heights(run)
     shares = [beam_by_height(run, one, step, len(labels)) for one in run.candidates]
     lead = [_lead(rows)]
@@ -90,6 +90,7 @@ def house_light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         sky_figure(run),
         Text((turn_words(table, rows[0].name, ridge),)),
         turn_rows(table, rows[0].name),
+        *floor_blocks(run, show),
     ]
     return Section("house", "Light in the house", "What does the house do to the light?", tuple(blocks))
 

@@ -7,11 +7,10 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from canopy.floormap import floor_map
+from canopy.floormap import floor_map, season_light
 from canopy.houseview import by_height, by_month, polar_map, sun_paths, turn_table
 from canopy.light import SunBands
 from canopy.lightpath import trace, transmit
-from reports.house_figures import floor_figure, height_rows, polar_figure, turn_figure, turn_rows
 from tests.housecase import PLAIN, clear, glass, weather
 from weather.record import Site
 
@@ -100,18 +99,17 @@ def _short():  # type: ignore[no-untyped-def]
     return replace(RECORD, **{k: v[:24] for k, v in values.items() if isinstance(v, np.ndarray)})
 
 
-def test_figures_hold_their_data() -> None:
-    sky = polar_map(HOUSE, glass())
-    figure = polar_figure(sky, sun_paths(RECORD.site), HOUSE.ridge_azimuth)
-    assert figure.data[0].type == "barpolar"
-    assert [t.name for t in figure.data[1:]] == ["21 December", "21 March", "21 June", "ridge"]
-    assert np.asarray(figure.data[0].marker.color).max() == pytest.approx(100.0 * sky.transmission.max())
-    table = turn_table(HOUSE, glass(), RECORD, step_deg=45.0)
-    assert len(turn_figure(table).data) == 2
-    rows = turn_rows(table)
-    assert len(rows) == 5
-    assert rows[1][1] == f"{100.0 * table.year[0]:.1f}"
-    heights = height_rows(by_height(FOUND, SUN, weather(70.0)))
-    assert heights[-1][-1] == "–"
-    floor = floor_map(PLAIN, glass(), np.array([40.0]), np.array([0.0]), np.ones(1), across=4, along=3)
-    assert floor_figure(floor).data[0].z.shape == (3, 4)
+def test_gathered_light_over_the_floor_gives_the_year_hour_by_hour() -> None:
+    light = season_light(RECORD, np.arange(8760))
+    assert light[2].sum() == pytest.approx(1.0, abs=1e-12)
+    house = replace(HOUSE, gutter_width=0.2, gutter_depth=0.2)
+    found = floor_map(house, glass(mirror=False), *light, across=100, along=30)
+    plain = transmit(trace(house, RECORD.zenith, RECORD.azimuth), glass(mirror=False), RECORD)
+    beam = RECORD.ghi - RECORD.dhi
+    arrives = beam * (plain.beam + plain.beam_scattered)[1] + RECORD.dhi * plain.sky[1]
+    assert found.transmission.mean() == pytest.approx(arrives.sum() / RECORD.ghi.sum(), abs=0.01)
+    # at 52 N the gable end that faces south is the bright one
+    assert found.edge("low_y", 3.0)[0] > found.edge("high_y", 3.0)[0]
+    # hills of height h leave cos^2 h of an even sky, and less of the low sun
+    hidden = season_light(RECORD, np.arange(8760), horizon=((0.0, 30.0), (180.0, 30.0)))
+    assert 0.3 < hidden[2].sum() < 0.85
