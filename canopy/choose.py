@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from canopy import library
 from canopy.optics import Covering, Leaf
-from canopy.studyfile import Plan, Study
+from canopy.studyfile import Plan, Study, is_file_name
 from canopy.studykeys import CoveringKeys
 from weather.errors import UserError
 
@@ -28,8 +28,11 @@ def choose_covering(name: str, study: Study) -> Chosen:
     own = next((c for c in study.keys.covering if c.name == name), None)
     if own is not None:
         return _own_covering(own, study)
-    if name.lower().endswith(".csv"):
-        return _from_laboratory(study, name, name)
+    if is_file_name(name):
+        try:
+            return _from_laboratory(study, name, name)
+        except UserError as error:
+            raise UserError(f"{study.label}: {error}") from None
     return Chosen(library.covering(name), None)
 
 
@@ -66,8 +69,11 @@ def _own_covering(keys: CoveringKeys, study: Study) -> Chosen:
 
 def choose_leaf(plan: Plan, study: Study) -> Leaf:
     """Return the leaf type of a candidate: by name, or from a CSV beside the study."""
-    if plan.crop.leaf.lower().endswith(".csv"):
+    if is_file_name(plan.crop.leaf):
         from canopy.leaves import leaf_from_csv
 
-        return leaf_from_csv(study.folder / plan.crop.leaf)
+        try:
+            return leaf_from_csv(study.folder / plan.crop.leaf)
+        except UserError as error:
+            raise UserError(f"{study.label}: {error}") from None
     return library.leaf(plan.crop.leaf)
