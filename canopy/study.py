@@ -127,6 +127,8 @@ class WeatherKeys(Section):
             raise ValueError(f"{found} given; write one of file, files, shipped, clear_sky = true")
         if (self.first_day is None) != (self.last_day is None):
             raise ValueError("first_day and last_day stand together or not at all")
+        if self.clear_sky and self.longwave == "file":
+            raise ValueError('longwave = "file" needs a file; a clear-sky year has none')
         return self
 
 

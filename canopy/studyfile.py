@@ -22,6 +22,7 @@ from canopy.study import ClimateKeys, CropKeys, HeatingKeys, HouseKeys
 from canopy.studykeys import CandidateKeys, StudyKeys
 from canopy.studymessage import one_line, say
 from weather.errors import UserError, nearest
+from weather.site import check_coordinates, standard_offset_h
 
 MAX_STUDY_BYTES = 1_000_000
 OVERRIDES = ("house", "crop", "climate", "heating")
@@ -223,10 +224,24 @@ def build_study(raw: dict[str, Any], folder: Path, label: str, blob: bytes) -> S
         keys = StudyKeys.model_validate(raw)
     except ValidationError as error:
         raise say(error, label, raw) from None
+    _check_site(keys, label)
     plans = tuple(_merged(keys, raw, entry, at, label) for at, entry in enumerate(keys.candidate))
     _check_names(keys, plans, label)
     _check_shapes(plans, label)
     return Study(keys, plans, folder, label, hashlib.sha256(blob).hexdigest(), blob.decode("utf-8-sig"))
+
+
+def _check_site(keys: StudyKeys, label: str) -> None:
+    """Refuse a place that does not fit its clock, and a computed year without a place (UserError)."""
+    site = keys.site
+    if keys.weather.clear_sky and (site.latitude is None or site.timezone is None):
+        raise UserError(f"{label}: weather -> clear_sky: needs latitude, longitude and timezone in [site]")
+    if site.latitude is not None and site.longitude is not None:
+        offset = standard_offset_h(site.timezone) if site.timezone is not None else None
+        try:
+            check_coordinates(site.latitude, site.longitude, offset)
+        except UserError as error:
+            raise UserError(f"{label}: {error}") from None
 
 
 def _check_shapes(plans: tuple[Plan, ...], label: str) -> None:

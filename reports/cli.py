@@ -178,6 +178,8 @@ def exit_code(args: list[str]) -> int:
             return _say(_usage(error), 2)
         if isinstance(error, OSError) and error.errno == errno.ENOSPC:
             return _say("what this prints cannot be written: no space left", 2)
+        if isinstance(error, OSError) and error.errno == errno.ENAMETOOLONG:
+            return _say("a file name is longer than the system allows", 2)
         traceback.print_exc()
         return _say(f"this is a bug ({type(error).__name__}), not your input; nothing was written", 1)
     return 0

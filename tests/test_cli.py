@@ -196,6 +196,7 @@ USAGE = {
     "one too many": (["check", "a", "b"], ["(b)"]),
     "empty folder": (["demo", "--out", ""], ["--out", "name a folder"]),
     "nothing to plot": (["coverings", "--plot", "x.html"], ["--plot"]),
+    "a name too long": (["weather", "x" * 300], ["longer than the system allows"]),
     "unknown covering": (["coverings", "glass-cleer-4"], ['did you mean "glass-clear-4"']),
 }
 

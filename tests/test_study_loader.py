@@ -218,3 +218,25 @@ def test_check_reads_the_spectra(tmp_path: Path, case: str) -> None:
     (tmp_path / "x.csv").write_text(f"wavelength_nm,reflectance,transmittance\n{rows}", encoding="utf-8")
     lab = f'{ONE}[[covering]]\nname = "own"\n{keys}\n[[candidate]]\nname = "a"\ncovering = "own"\n'
     assert part in _refused(tmp_path, lab if case == "covering" else _own(keys))
+
+
+PLACES = {
+    "swapped inside both ranges": ("latitude = 5.3\nlongitude = 52.1", "Europe/Amsterdam", "look swapped"),
+    "another sea": ("latitude = 52.1\nlongitude = 5.3", "America/New_York", "does not fit the time zone"),
+    "the other sign": ("latitude = 36.1\nlongitude = 79.95", "America/New_York", "sign of the longitude"),
+}
+
+
+@pytest.mark.parametrize("case", PLACES)
+def test_a_place_that_does_not_fit_its_clock(tmp_path: Path, case: str) -> None:
+    place, zone, part = PLACES[case]
+    text = re.sub(r"latitude = .*\nlongitude = .*", place, STARTER).replace("America/New_York", zone)
+    assert part in _refused(tmp_path, text)
+
+
+def test_a_computed_year_needs_a_place(tmp_path: Path) -> None:
+    text = re.sub(r"latitude = .*\nlongitude = .*", "", STARTER)
+    text = text.replace('shipped = "greensboro"', "clear_sky = true")
+    assert "weather -> clear_sky: needs latitude" in _refused(tmp_path, text)
+    filed = STARTER.replace('shipped = "greensboro"', 'clear_sky = true\nlongwave = "file"')
+    assert "a clear-sky year has none" in _refused(tmp_path, filed)
