@@ -77,6 +77,27 @@ def past_gutters(arc: Arc, low: Floats, high: Floats, lean: Floats) -> Floats:
     return np.asarray(np.clip((area(low + size) - area(low)) / size, 0.0, 1.0))
 
 
+def grid(low: Floats, high: Floats, breaks: Floats, count: int) -> tuple[Floats, Floats]:
+    """Cut low..high (U,) into `count` pieces, one edge on the break if it lies within; return mids, sizes."""
+    share = (breaks - low) / np.maximum(high - low, 1e-12)
+    before = np.where((share > 0.0) & (share < 1.0), np.clip(np.rint(share * count), 1, count - 1), count)
+    split = np.where(before < count, breaks, high)[:, None]
+    at, before = np.arange(count), before[:, None]
+    first, second = (split - low[:, None]) / before, (high[:, None] - split) / np.maximum(count - before, 1)
+    step = np.where(at < before, first, second)
+    mid = np.where(at < before, low[:, None] + (at + 0.5) * first, split + (at - before + 0.5) * second)
+    return mid, step
+
+
+def touch(arc: Arc, height: Floats) -> Floats:
+    """Return how far from the sun's height lies the slope whose line to the sun touches the first neighbour.
+
+    The line of a point with slope a meets the gutter line R (1 - cos(a - e)) / sin(e) further out than the
+    line that touches the point's own arc.
+    """
+    return np.asarray(np.arccos(np.clip(1.0 - arc.width * np.sin(height) / arc.radius, -1.0, 1.0)))
+
+
 def inner(arc: Arc, house: House, rays: Rays) -> InnerWays:
     """Light that the inside of the half facing away from the sun mirrors down."""
     rows, height = len(rays.up), section_height(rays)
@@ -85,8 +106,9 @@ def inner(arc: Arc, house: House, rays: Rays) -> InnerWays:
     use = np.flatnonzero(height < arc.edge - 1e-6)
     e = height[use][:, None]
     begin = (arc.edge + 2.0 * e) / 3.0
-    step = (arc.edge - begin) / INNER_POINTS
-    slope = begin + step * (np.arange(INNER_POINTS) + 0.5)
+    slope, step = grid(
+        begin[:, 0], np.full(len(use), arc.edge), height[use] + touch(arc, height[use]), INNER_POINTS
+    )
     low, high = landing(arc, slope - 0.5 * step, e), landing(arc, slope + 0.5 * step, e)
     spans = valid(arc, low, high)
     turn = 2.0 * slope - e

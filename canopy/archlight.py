@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from canopy.archbasis import SINGLE, Pairs, RowSums, at_nodes, pairs, row_sums, spread
 from canopy.archbounce import InnerWays, inner
-from canopy.archthrow import ThrownWays, outer, outer_front, through
+from canopy.archthrow import Beyond, ThrownWays, outer, outer_front, through
 from canopy.archtrace import Arc, Passes, Ways, arc_of, section_height, trace_straight
 from canopy.house import House
 from canopy.passing import Passed, Sheets
@@ -139,18 +139,19 @@ class _Thrown:
     mirror: Place
     entry: Place
     between: tuple[tuple[int, Place], ...]  # how many points, counted from the first, cross one more
-    beyond: tuple[tuple[Ints, Place, Floats], ...]
+    beyond: tuple[tuple[Beyond, Place], ...]
+    row: Ints
 
     def give(
-        self, out: Floats, first: Floats, table: Floats, gable: tuple[Floats, Floats] | None = None
+        self, out: Floats, first: Floats, table: Floats, end: Floats, behind: Floats | None = None
     ) -> None:
         """Add the light to out (B, M); `first` is a table for what happens at the mirror.
 
-        `gable`: the same table for light that came in through the gable end, and what that end passes (B, M).
+        `end` (B, M) is what the gable end passes, `behind` as `first` for light that came in through it.
         """
         self.plain.add(out, first, table)
-        if gable is not None:
-            self.gable.add(out, gable[0], table, gable[1])
+        if behind is not None:
+            self.gable.add(out, behind, table, end)
         if not self.between and not self.beyond:
             return
         read = SheetTable.read
@@ -159,8 +160,10 @@ class _Thrown:
             light[:, :count] *= read(table, where) ** 2
         if self.beyond:
             rest = np.ones_like(light)
-            for points, where, share in self.beyond[::-1]:
-                rest[:, points] = 1.0 - share + share * read(table, where) ** 2 * rest[:, points]
+            for near, where in self.beyond[::-1]:
+                at, once = near.points, read(table, where)
+                beside = near.behind * end[:, self.row[at]]
+                rest[:, at] = near.clear + once * (beside + near.deep * once * rest[:, at])
             light *= rest
         self.sums.add(out, light)
 
@@ -171,8 +174,8 @@ def _thrown(ways: ThrownWays) -> _Thrown:
     crossing = np.zeros(len(ways.row), dtype=bool)
     for points, _ in ways.between:
         depth[points] += 1
-    for found in (*ways.between, *ways.beyond):
-        crossing[found[0]] = True
+    for points in (*(found[0] for found in ways.between), *(found.points for found in ways.beyond)):
+        crossing[points] = True
     order = np.argsort(-depth, kind="stable")
     order = order[crossing[order]]
     number = np.zeros(len(ways.row), dtype=np.int64)
@@ -187,7 +190,8 @@ def _thrown(ways: ThrownWays) -> _Thrown:
         place(ways.mirror[order]),
         place(ways.entry[order]),
         tuple(between),
-        tuple((number[points], place(cosine), share) for points, cosine, share in ways.beyond),
+        tuple((replace(near, points=number[near.points]), place(near.cosine)) for near in ways.beyond),
+        ways.row[order],
     )
 
 
@@ -243,9 +247,9 @@ class ArchLight:
             bounce[:, rows] += at_nodes(both, SINGLE) @ self.inner.nodes.T
             bounce[:, rows] += (at_nodes(roof.reflect, SINGLE) @ self.inner.gable.T) * gable[:, rows]
             self.inner_chain.give(bounce, both, roof.total, gable)
-        self.outer.give(bounce, roof.specular, roof.total)
-        self.outer_front.give(bounce, roof.specular, roof.total)
-        self.through.give(bounce, both * roof.total, roof.total, (both, gable))
+        self.outer.give(bounce, roof.specular, roof.total, gable)
+        self.outer_front.give(bounce, roof.specular, roof.total, gable)
+        self.through.give(bounce, both * roof.total, roof.total, gable, both)
 
     def _absorbed(self, sheets: Sheets, on_wall: Floats, on_gable: Floats) -> Floats:
         """Return what each layer keeps; a neighbour's arc weakens light as at its mean incidence."""

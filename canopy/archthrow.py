@@ -10,13 +10,24 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from canopy.archbounce import at_gutter, landing, past_gutters, valid
+from canopy.archbounce import at_gutter, grid, landing, past_gutters, touch, valid
 from canopy.archtrace import Arc, section_height
 from canopy.house import House
 from canopy.rays import Bools, Floats, Ints, Rays
 from canopy.structure import bars_open
 
-THROWN_POINTS = 24
+THROWN_POINTS = 28
+
+
+@dataclass(frozen=True)
+class Beyond:
+    """One more neighbour between mirror and sun: of the lines that have come as far as it, (P,) each."""
+
+    points: Ints
+    cosine: Floats  # at its arc
+    clear: Floats  # share that misses it: no span there, or the gable end lies before it
+    behind: Floats  # share that came in through its gable end, times what bars leave open
+    deep: Floats  # share that crosses its arc twice, times what bars leave open
 
 
 @dataclass(frozen=True)
@@ -28,9 +39,7 @@ class ThrownWays:
     mirror: Floats  # cosine at the mirror
     entry: Floats  # cosine where it comes in
     between: tuple[tuple[Ints, Floats], ...]  # points that cross one more neighbour going in, cosines there
-    beyond: tuple[
-        tuple[Ints, Floats, Floats], ...
-    ]  # the same towards the sun, and share of spans that have it
+    beyond: tuple[Beyond, ...]  # neighbours towards the sun
     gable: Floats  # weight of what came in through the gable end, not through the arc above the mirror
 
 
@@ -93,7 +102,7 @@ def _thrown(
 
     `front`: the mirror faces the sun (seen from behind); `within`: it is the inside of the arc.
     """
-    points = _samples(arc, rays, use, slopes, front=front)
+    points = _samples(arc, rays, use, slopes, front=front, within=within)
     points = points.some((points.weight > 1e-9) & (points.cells >= 1))
     row, across = points.row, points.across
     entry = across * np.sqrt(1.0 - arc.offset(points.own, points.turn) ** 2)
@@ -108,35 +117,37 @@ def _thrown(
         between.append((more, cosine))
     at = (arc.width - points.x if front else points.x) - points.up / rays.slope[row]
     sure = points.cells if front else np.zeros_like(points.cells)
-    beyond = _beyond(arc, rays, row, at, points.spans, sure)
     ended = points.begun
     if within:
         height = section_height(rays)[row]
         rest = np.maximum(arc.leaves(arc.offset(at, height), height)[1] - points.up, 0.0)
         ended = np.minimum(ended + rays.drift[row] / arc.length * rest, 1.0)
+    beyond = _beyond(arc, house, rays, points, at, ended, sure)
     side = weight * (ended - points.begun)
     return ThrownWays(row, weight * (1.0 - ended), points.mirror, entry, tuple(between), beyond, side)
 
 
-def _samples(arc: Arc, rays: Rays, use: Ints, slopes: tuple[Floats, Floats], *, front: bool) -> _Samples:
+def _samples(
+    arc: Arc, rays: Rays, use: Ints, slopes: tuple[Floats, Floats], *, front: bool, within: bool
+) -> _Samples:
     """Return the points between two slopes with all that does not depend on sheets and bars."""
     e = section_height(rays)[use][:, None]
     e = np.pi - e if front else e
-    step = (slopes[1] - slopes[0])[:, None] / THROWN_POINTS
-    grid = slopes[0][:, None] + step * (np.arange(THROWN_POINTS) + 0.5)
+    breaks = e[:, 0] + (1.0 if within else -1.0) * touch(arc, e[:, 0])
+    mids, step = grid(*slopes, breaks, THROWN_POINTS)
     far = -float(arc.spans + 1) * arc.width
-    ends = (grid - 0.4999 * step, grid + 0.4999 * step)
+    ends = (mids - 0.4999 * step, mids + 0.4999 * step)
     low, high = (np.maximum(landing(arc, a, e), far) for a in ends)
     low_gutter, high_gutter = (np.maximum(at_gutter(arc, a, e), far) for a in ends)
-    past = past_gutters(arc, low_gutter, high_gutter, 1.0 / np.tan(2.0 * grid - e)).ravel()
+    past = past_gutters(arc, low_gutter, high_gutter, 1.0 / np.tan(2.0 * mids - e)).ravel()
     spans = valid(arc, low, high).ravel()
-    turn, slope = (2.0 * grid - e).ravel(), grid.ravel()
+    turn, slope = (2.0 * mids - e).ravel(), mids.ravel()
     up = np.maximum(arc.radius * np.cos(slope) - arc.sunk, 0.0)
-    gutter = np.maximum(at_gutter(arc, grid, e), far).ravel()
+    gutter = np.maximum(at_gutter(arc, mids, e), far).ravel()
     row = np.repeat(use, THROWN_POINTS)
     across = np.hypot(rays.across, rays.up)[row]
-    mirror = across * np.abs(np.sin(grid - e)).ravel()
-    flux = mirror * np.repeat(arc.radius * step[:, 0], THROWN_POINTS) / (rays.up[row] * arc.width * arc.spans)
+    mirror = across * np.abs(np.sin(mids - e)).ravel()
+    flux = mirror * arc.radius * step.ravel() / (rays.up[row] * arc.width * arc.spans)
     way = rays.along[row] / (across * np.sin(turn)) / arc.length
     cells = np.ceil(-gutter / arc.width).astype(np.int64)
     sun = np.full(len(row), 1e9) if front else rays.slope[row]
@@ -156,24 +167,37 @@ def _samples(arc: Arc, rays: Rays, use: Ints, slopes: tuple[Floats, Floats], *, 
 
 
 def _beyond(
-    arc: Arc, rays: Rays, row: Ints, x: Floats, spans: Floats, sure: Ints
-) -> tuple[tuple[Ints, Floats, Floats], ...]:
-    """Return, for each further neighbour towards the sun, points that meet it, cosine there, share of spans.
+    arc: Arc, house: House, rays: Rays, points: _Samples, x: Floats, ended: Floats, sure: Ints
+) -> tuple[Beyond, ...]:
+    """Return the neighbours towards the sun of lines at x on the gutter line.
 
-    `sure` neighbours are there for every span whose light lands inside.
+    `sure` neighbours are there for every span whose light lands inside. Along the ridge, mirrors between the
+    shares `begun` and 1 - (`ended` - `begun`) of the length see the sun through the roof; each neighbour that
+    is met at height h lies before the gable end for those below 1 - drift (h - height of the mirror).
     """
+    row, spans = points.row, points.spans
     height = section_height(rays)[row]
     meets = np.floor((x - arc.tangent(height)) / arc.width).astype(np.int64)
-    across = np.hypot(rays.across, rays.up)[row]
+    drift = rays.drift[row] / arc.length
+    last = 1.0 - ended  # length of the mirrors' strip that has come as far, from `begun` on
     found = []
     for i in range(1, int(meets.max(initial=0)) + 1):
         more = np.flatnonzero((meets >= i) & (spans > i - 1 - sure))
         if not len(more):
             break
-        cosine = across[more] * np.sqrt(1.0 - arc.offset(x[more] - i * arc.width, height[more]) ** 2)
+        h, up, rest = height[more], points.up[more], 1.0 - points.begun[more]
+        offset = arc.offset(x[more] - i * arc.width, h)
+        cosine = points.across[more] * np.sqrt(1.0 - offset**2)
         gone = np.maximum(i - sure[more], 0)
-        share = np.where(gone > 0, np.clip((spans[more] - gone) / (spans[more] - gone + 1.0), 0.0, 1.0), 1.0)
-        found.append((more, cosine, share))
+        there = np.where(gone > 0, np.clip((spans[more] - gone) / (spans[more] - gone + 1.0), 0.0, 1.0), 1.0)
+        enter = np.clip(rest - drift[more] * (arc.enters(offset, h) - up), 0.0, last[more])
+        leave = np.clip(rest - drift[more] * (arc.leaves(offset, h)[1] - up), 0.0, enter)
+        whole = np.maximum(last[more], 1e-12)
+        open_bars = bars_open(house, cosine, rays.along[row[more]])
+        behind, deep = there * (enter - leave) / whole, there * leave / whole
+        found.append(Beyond(more, cosine, 1.0 - behind - deep, behind * open_bars, deep * open_bars**2))
+        last = last.copy()
+        last[more] = leave
     return tuple(found)
 
 

@@ -177,7 +177,10 @@ def straight_points(arc: Arc, rays: Rays) -> tuple[Points, Bools, Ints]:
     breaks = [shift, np.mod(arc.tangent(height), w)]
     half, reach = 0.5 * arc.gutter_width, arc.gutter_depth / slope
     if half > 0.0:
-        breaks += [half + reach, np.full_like(slope, w - half)]
+        breaks += [half + reach, np.full_like(slope, w - half), np.mod(reach, w)]
+    # a way to the side wall as long as the house: from here on all leaves through the gable end
+    whole = np.mod((arc.above - arc.length / np.maximum(rays.drift, 1e-9)) / slope, w)
+    breaks.append(np.where(rays.drift * arc.above > arc.length, whole, 0.0))
     if arc.ridge_width > 0.0:
         crown = 0.5 * w - arc.rise / slope
         breaks += [np.mod(crown + arc.ridge_depth / slope + 0.5 * arc.ridge_width, w)]
@@ -314,10 +317,13 @@ def trace_straight(arc: Arc, house: House, rays: Rays) -> tuple[Ways, Ways, Ways
     some = part
     for span in range(min(arc.spans, int(part.cell.max(initial=0)))):
         some = some.some(some.cell > span)
-        at = arc.above - some.slope * (some.x + (some.cell - 1 - span) * arc.width)
-        wall.gable -= np.bincount(
-            some.row, weights=some.weight * some.share(np.maximum(at, 0.0)), minlength=rows
-        )
+        beyond = some.cell - 1 - span
+        share = some.share(np.maximum(arc.above - some.slope * (some.x + beyond * arc.width), 0.0))
+        if arc.gutter_width > 0.0:
+            stop = some.x + beyond * arc.width <= 0.5 * arc.gutter_width + arc.gutter_depth / some.slope
+            box = some.share(gutter_height(arc, some, beyond))
+            share = np.where(stop, np.minimum(box, share), share)
+        wall.gable -= np.bincount(some.row, weights=some.weight * share, minlength=rows)
     np.maximum(wall.gable, 0.0, out=wall.gable)
     return (
         Ways(sums.single, passes, sums.wall, sums.gable),
@@ -343,12 +349,14 @@ def _wall_part(arc: Arc, points: Points, sums: Sums) -> None:
         part = points.some((points.first <= span) & (points.last > span))
         beyond = part.cell - 1 - span
         at = arc.above - part.slope * (part.x + beyond * arc.width)
-        stop = np.zeros(len(at), dtype=bool)
-        if arc.gutter_width > 0.0:
-            stop = part.x + beyond * arc.width <= 0.5 * arc.gutter_width + arc.gutter_depth / part.slope
-            at = np.where(stop, gutter_height(arc, part, beyond), at)
         out = part.share(np.maximum(at, 0.0))
+        passed, ends = 1.0 - out, part.weight
+        if arc.gutter_width > 0.0:
+            # a box is met before the wall, or behind it by lines that are still short of the gable end
+            stop = part.x + beyond * arc.width <= 0.5 * arc.gutter_width + arc.gutter_depth / part.slope
+            box = part.share(gutter_height(arc, part, beyond))
+            passed = np.where(stop, np.maximum(box - out, 0.0), passed)
+            out, ends = np.where(stop, np.minimum(box, out), out), np.where(stop, 0.0, ends)
         sums.gable += np.bincount(part.row, weights=part.weight * out, minlength=sums.rows)
-        free = np.where(stop, 0.0, part.weight)
-        sums.wall += np.bincount(part.row, weights=free * (1.0 - out), minlength=sums.rows)
-        sums.mirror_wall += np.bincount(part.row, weights=free * out, minlength=sums.rows)
+        sums.wall += np.bincount(part.row, weights=part.weight * passed, minlength=sums.rows)
+        sums.mirror_wall += np.bincount(part.row, weights=ends * out, minlength=sums.rows)

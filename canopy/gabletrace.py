@@ -57,7 +57,8 @@ def _breaks(sec: Section, slope: Floats, ridge: Floats, shift: Floats) -> list[F
     breaks = [shift, np.mod(ridge, w)]
     if sec.gutter_width > 0.0:
         half, reach = 0.5 * sec.gutter_width, sec.gutter_depth / slope
-        breaks += [half + reach, np.full_like(slope, w - half), np.mod(reach - half, w)]
+        breaks += [half + reach, np.full_like(slope, w - half)]
+        breaks += [np.mod(reach - half, w), np.mod(reach, w)]
     if sec.ridge_width > 0.0:
         half, reach = 0.5 * sec.ridge_width, sec.ridge_depth / slope
         breaks += [np.mod(ridge + at, w) for at in (half + reach, -half, reach - half)]
@@ -193,12 +194,15 @@ def _wall_part(sec: Section, line: Line, sums: _Sums, gable: _Sums | None) -> No
         low = sec.above - fall * (line.cuts.low[use] + beyond * sec.width)
         high = sec.above - fall * (line.cuts.high[use] + beyond * sec.width)
         stop = (line.cuts.mid[use] + beyond * sec.width <= reach[use]) & (sec.gutter_width > 0.0)
-        if stop.any():
-            box_low, box_high = _gutter_height(sec, line, use, beyond)
-            low, high = np.where(stop, box_low, low), np.where(stop, box_high, high)
         out = line.share(np.maximum(low, 0.0), np.maximum(high, 0.0), use)
+        passed = 1.0 - out
+        if stop.any():
+            # a box is met before the wall, or behind it by lines that are still short of the gable end
+            box = line.share(*_gutter_height(sec, line, use, beyond), use)
+            passed = np.where(stop, np.maximum(box - out, 0.0), passed)
+            out = np.where(stop, np.minimum(box, out), out)
         sums.gable += gather(row, weight * out, sums.rows)
-        sums.wall += gather(row, np.where(stop, 0.0, weight * (1.0 - out)), sums.rows)
+        sums.wall += gather(row, weight * passed, sums.rows)
         if gable is not None:
             gable.wall += gather(row, np.where(stop, 0.0, weight * out), sums.rows)
 
@@ -214,6 +218,11 @@ def _before_the_wall(sec: Section, line: Line, wall: _Sums) -> None:
         low = sec.above - line.slope[use] * (line.cuts.low[use] + beyond * sec.width)
         high = sec.above - line.slope[use] * (line.cuts.high[use] + beyond * sec.width)
         share = line.share(np.maximum(low, 0.0), np.maximum(high, 0.0), use)
+        if sec.gutter_width > 0.0:
+            reach = 0.5 * sec.gutter_width + sec.gutter_depth / line.slope[use]
+            stop = line.cuts.mid[use] + beyond * sec.width <= reach
+            box = line.share(*_gutter_height(sec, line, use, beyond), use)
+            share = np.where(stop, np.minimum(box, share), share)
         wall.gable -= gather(line.cuts.row[use], line.weight[use] * share, wall.rows)
     np.maximum(wall.gable, 0.0, out=wall.gable)
 

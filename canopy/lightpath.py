@@ -3,6 +3,9 @@
 `trace` knows nothing of materials: for every daylight hour and every direction of the sky grid it lists which
 sheets light crosses on its way to the crop plane, straight and with one mirror bounce. `transmit` multiplies
 these lists with what the sheets pass. A hundred coverings share one trace.
+
+Left out: second bounces, and light that comes in through one gable end and is mirrored by the other (a sun
+along the ridge that stands lower than height above the crop over length, 3-6 degrees in usual houses).
 """
 
 from __future__ import annotations
