@@ -41,6 +41,7 @@ from weather.constants import CP_WATER
 Floats = NDArray[np.float64]
 
 HEAT_WEIGHT: Final = 10.0  # W/m2 per K of air error, against W/m2 of pipe heat
+HEATED_K: Final = 0.3  # so far above its set-point a house may still be on the way down to it
 PIPE_WEIGHT: Final = 3.0  # W/m2 per K of pipe temperature
 VENT_WEIGHT: Final = 10.0  # K per unit of opening
 VAPOUR_WEIGHT: Final = 0.01  # K per Pa above the humidity limit
@@ -169,7 +170,8 @@ def pipe_row(c: Context) -> None:
     heat = -system.residual[pipe]  # what the boiler must give for the pipe to balance
     system.flows["heat"] = heat
     heating = m.case.heating
-    cooling = (m.vent_at - c.u[air]) <= VENT_WEIGHT * c.u[ix.vent]  # the vents hold the air, or should
+    # The vents hold the air, or should: no heat. Only above the set-point, where no answer has any either.
+    cooling = (m.vent_at - c.u[air] <= VENT_WEIGHT * c.u[ix.vent]) & (c.u[air] > m.heat_at + HEATED_K)
     warm = np.where(cooling, np.inf, HEAT_WEIGHT * (c.u[air] - m.heat_at))
     least = PIPE_WEIGHT * (c.u[pipe] - m.min_pipe)
     low = np.minimum(np.minimum(warm, least), heat)
