@@ -18,6 +18,8 @@ from canopy.house import House
 from canopy.rays import Floats, Ints, Rays
 
 INNER_POINTS, BACK_POINTS = 40, 10
+LEAST_LIGHT = 1e-6
+"""Sampled light below this share of the light on the floor is left out."""
 
 
 @dataclass(frozen=True)
@@ -44,18 +46,16 @@ def valid(arc: Arc, low: Floats, high: Floats) -> Floats:
     return np.asarray(np.where(wide, mean, single), dtype=np.float64)
 
 
-def at_gutter(arc: Arc, slope: Floats, height: Floats) -> Floats:
-    """Return where light mirrored at a point of that slope crosses the gutter line, m from the left."""
+def way_down(arc: Arc, slope: Floats, height: Floats) -> tuple[Floats, Floats]:
+    """Return where light mirrored at points of that slope crosses the gutter line and where it lands.
+
+    Metres from the left gutter of its span; landing on the crop plane.
+    """
     turn = 2.0 * slope - height
+    lean = np.cos(turn) / np.sin(turn)
     up = arc.radius * np.cos(slope) - arc.sunk
-    return np.asarray(0.5 * arc.width - arc.radius * np.sin(slope) - up * np.cos(turn) / np.sin(turn))
-
-
-def landing(arc: Arc, slope: Floats, height: Floats) -> Floats:
-    """Return where light mirrored at a point of that slope lands, m from the left gutter of its span."""
-    turn = 2.0 * slope - height
-    up = arc.radius * np.cos(slope) - arc.sunk + arc.above
-    return np.asarray(0.5 * arc.width - arc.radius * np.sin(slope) - up * np.cos(turn) / np.sin(turn))
+    gutter = 0.5 * arc.width - arc.radius * np.sin(slope) - up * lean
+    return gutter, gutter - arc.above * lean
 
 
 def past_gutters(arc: Arc, low: Floats, high: Floats, lean: Floats) -> Floats:
@@ -109,15 +109,14 @@ def inner(arc: Arc, house: House, rays: Rays) -> InnerWays:
     slope, step = grid(
         begin[:, 0], np.full(len(use), arc.edge), height[use] + touch(arc, height[use]), INNER_POINTS
     )
-    low, high = landing(arc, slope - 0.5 * step, e), landing(arc, slope + 0.5 * step, e)
+    low_gutter, low = way_down(arc, slope - 0.5 * step, e)
+    high_gutter, high = way_down(arc, slope + 0.5 * step, e)
     spans = valid(arc, low, high)
     turn = 2.0 * slope - e
     x = 0.5 * arc.width - arc.radius * np.sin(slope)
     up = np.maximum(arc.radius * np.cos(slope) - arc.sunk, 0.0)
     lean = np.cos(turn) / np.sin(turn)
-    past = past_gutters(
-        arc, at_gutter(arc, slope - 0.5 * step, e), at_gutter(arc, slope + 0.5 * step, e), lean
-    )
+    past = past_gutters(arc, low_gutter, high_gutter, lean)
     row = np.repeat(use, INNER_POINTS)
     across = np.hypot(rays.across, rays.up)[row]
     facing = np.sin(slope - e).ravel()  # incidence in the section
@@ -139,7 +138,7 @@ def inner(arc: Arc, house: House, rays: Rays) -> InnerWays:
         np.minimum(way * tall, 1.0), across, rays.along[row],
         np.zeros_like(skip), skip, skip + rooms, meets, stopped,
     )  # fmt: skip
-    points = points.some(weight > 0.0)
+    points = points.some(weight > LEAST_LIGHT)
     passes = follow(arc, house, points, sums)
     return InnerWays(sums.single, sums.gable_nodes, passes, _back(arc, rays, use))
 

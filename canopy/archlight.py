@@ -224,14 +224,18 @@ class ArchLight:
         read = SheetTable.read
         wall = read(sheets.wall.total, self.wall) * self.open_wall
         gable = read(sheets.gable.total, self.gable) * self.open_gable
-        straight, on_gable = self.straight.give(sheets.roof.total, wall, gable, self.far_gable)
-        beam = straight
-        if sheets.hazy:
-            beam, _ = self.straight.give(
-                sheets.roof.beam,
-                read(sheets.wall.beam, self.wall) * self.open_wall,
-                read(sheets.gable.beam, self.gable) * self.open_gable,
+        if sheets.hazy:  # all light and unscattered light in one go
+            bands = len(wall)
+            light, mirrored = self.straight.give(
+                np.vstack([sheets.roof.total, sheets.roof.beam]),
+                np.vstack([wall, read(sheets.wall.beam, self.wall) * self.open_wall]),
+                np.vstack([gable, read(sheets.gable.beam, self.gable) * self.open_gable]),
+                self.far_gable,
             )
+            straight, beam, on_gable = light[:bands], light[bands:], mirrored[:bands]
+        else:
+            straight, on_gable = self.straight.give(sheets.roof.total, wall, gable, self.far_gable)
+            beam = straight
         on_wall, _ = self.far_wall.give(sheets.roof.total, wall, gable)
         bounce = on_wall * read(sheets.wall.reflect, self.wall)
         bounce += on_gable * read(sheets.gable.reflect, self.gable)

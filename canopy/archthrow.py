@@ -10,7 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from canopy.archbounce import at_gutter, grid, landing, past_gutters, touch, valid
+from canopy.archbounce import LEAST_LIGHT, grid, past_gutters, touch, valid, way_down
 from canopy.archtrace import Arc, section_height
 from canopy.house import House
 from canopy.rays import Bools, Floats, Ints, Rays
@@ -103,7 +103,7 @@ def _thrown(
     `front`: the mirror faces the sun (seen from behind); `within`: it is the inside of the arc.
     """
     points = _samples(arc, rays, use, slopes, front=front, within=within)
-    points = points.some((points.weight > 1e-9) & (points.cells >= 1))
+    points = points.some((points.weight > LEAST_LIGHT) & (points.cells >= 1))
     row, across = points.row, points.across
     entry = across * np.sqrt(1.0 - arc.offset(points.own, points.turn) ** 2)
     along = rays.along[row]
@@ -137,13 +137,12 @@ def _samples(
     mids, step = grid(*slopes, breaks, THROWN_POINTS)
     far = -float(arc.spans + 1) * arc.width
     ends = (mids - 0.4999 * step, mids + 0.4999 * step)
-    low, high = (np.maximum(landing(arc, a, e), far) for a in ends)
-    low_gutter, high_gutter = (np.maximum(at_gutter(arc, a, e), far) for a in ends)
+    (low_gutter, low), (high_gutter, high) = ((np.maximum(x, far) for x in way_down(arc, a, e)) for a in ends)
     past = past_gutters(arc, low_gutter, high_gutter, 1.0 / np.tan(2.0 * mids - e)).ravel()
     spans = valid(arc, low, high).ravel()
     turn, slope = (2.0 * mids - e).ravel(), mids.ravel()
     up = np.maximum(arc.radius * np.cos(slope) - arc.sunk, 0.0)
-    gutter = np.maximum(at_gutter(arc, mids, e), far).ravel()
+    gutter = np.maximum(way_down(arc, mids, e)[0], far).ravel()
     row = np.repeat(use, THROWN_POINTS)
     across = np.hypot(rays.across, rays.up)[row]
     mirror = across * np.abs(np.sin(mids - e)).ravel()

@@ -140,7 +140,8 @@ class Points:
 
     def some(self, use: Bools | Ints) -> Points:
         """Return some of the points."""
-        return Points(*(getattr(self, name)[use] for name in self.__dataclass_fields__))
+        at = np.flatnonzero(use) if use.dtype == np.bool_ else use
+        return Points(*(getattr(self, name).take(at) for name in self.__dataclass_fields__))
 
     def spans_with(self, cells: int) -> Ints:
         """Return how many spans have room for that many cells beyond `cell`."""
