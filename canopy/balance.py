@@ -24,16 +24,16 @@ from weather.errors import OpenHourError
 
 Floats = NDArray[np.float64]
 
-CLOSED_W_M2: Final = 1e-6  # every row of every hour
+CLOSED_W_M2: Final = 2e-5  # every row of every hour
 FILM_LAPS: Final = 60  # a film that gains 1 g/m2 a day fills in as many
 ENOUGH_W_M2: Final = 1e-2  # left after all turns: one day that repeats itself closes slowly
 LET_GO_HUMIDITY: Final = 2
 LET_GO_VENTS: Final = 4
 OPEN_W_M2: Final = 1e-3  # what sends an hour to the other route
 TURNS: Final = 8  # of Newton passes and other route
-FIRST_PASSES: Final = 12
+FIRST_PASSES: Final = 16
 LATER_PASSES: Final = 5
-APART: Final = 3  # first passes, each hour by itself: far from the answer the past only spreads the error
+APART: Final = 1  # first passes, each hour by itself: far from the answer the past only spreads the error
 GREY_C: Final = 10.0  # temperature at which grey means are weighted
 FEW: Final = 0.6  # share of hours still moving below which only they are evaluated
 
@@ -73,13 +73,13 @@ def settle(model: Model, state: State, quick: bool = False) -> tuple[Context, in
             if active is not None and 0 < len(active) < FEW * model.hours:
                 stepper.step_moving()
                 continue
-            context, error, _ = stepper.look()
+            context, error, gone = stepper.look()
             if float(error.max()) < CLOSED_W_M2:
                 return context, passes, by_other_route
             if turn == 0 and step < APART and not quick:
                 stepper.apart(context)
             else:
-                stepper.step(context, error)
+                stepper.step(context, error, gone)
         by_other_route += _other_route(model, state, turn)
         stepper.active = None
     context, error, _ = stepper.look()

@@ -92,6 +92,7 @@ class Model:
     dry_outside: Bools
     let_go: Bools  # hours taken without their humidity limit (see `balance`)
     open_all: Bools
+    hold: Floats  # opening that an hour is held at, nan: free (see `heatretry.bracketed`)
     vent_max: Floats
     min_pipe: Floats
 
@@ -297,7 +298,7 @@ def build_model(case: HeatCase, bands: BandSet = THERMAL) -> Model:
         heat_at=heat_at, vent_at=vent_at, humidity_max=limit,
         dry_outside=e_out < VENT_HELPS_BELOW * limit * vp.saturation(warm_side)[0],
         let_go=np.zeros(hours, dtype=bool), open_all=_stand_open(temp_out, heat_at, vent_at, drawn),
-        vent_max=np.full(hours, 1.0 if shell.vent_area_ratio > 0.0 else 0.0),
+        hold=np.full(hours, np.nan), vent_max=np.full(hours, 1.0 if shell.vent_area_ratio > 0.0 else 0.0),
         min_pipe=np.where(np.isfinite(heat_at), order.into(climate.min_pipe_c), -np.inf),
     )  # fmt: skip
 

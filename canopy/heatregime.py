@@ -208,8 +208,9 @@ def vent_row(c: Context) -> None:
     shut = VENT_WEIGHT * opening
     low = np.minimum(np.minimum(cool, humid), shut)
     high = np.where(m.open_all, np.inf, VENT_WEIGHT * (opening - most))
-    full = (high > low) | m.open_all | (most <= 0.0)
-    value = np.where(full, VENT_WEIGHT * (opening - most), low)
+    held = np.isfinite(m.hold)
+    full = (high > low) | m.open_all | (most <= 0.0) | held
+    value = np.where(full, VENT_WEIGHT * (opening - np.where(held, m.hold, most)), low)
     by_cool = ~full & (cool <= humid) & (cool <= shut)
     by_shut = ~full & ~by_cool & (shut <= humid)
     rest = ~full & ~by_cool & ~by_shut

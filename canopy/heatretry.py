@@ -1,7 +1,8 @@
 """The other route for hours that Newton steps of the whole record leave open.
 
-Each such hour is solved by itself with the hour before held: damped steps that must lower the open amount,
-and where these stall, fresh starts from each regime (shut, part open, open; heating off or at its limit).
+Each such hour is solved by itself with the hour before held: a few whole steps, then damped ones that must
+lower the open amount, and where these stall, fresh starts from each regime (shut, part open, open; heating
+off or at its limit). What no start closes has its opening bracketed. Hours that are done are left out.
 """
 
 from __future__ import annotations
@@ -12,6 +13,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from canopy import vapour as vp
+from canopy.heatindex import Index
 from canopy.heatmodel import Model
 from canopy.heatregime import PAST_KINK, evaluate, vent_reach
 from canopy.heatrows import Context, Past
@@ -20,22 +22,25 @@ from canopy.newton import Entry, eliminate
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 
-TRIES: Final = 30
-HALVINGS: Final = 9
+TRIES: Final = 40
+WHOLE_STEPS: Final = 5  # tries whose step is taken whole; later ones must lower the open amount
+GIVEN_UP: Final = 1e-3  # share of a step below which an hour is left as it is
+SMALLER: Final = 0.35  # what a step that does not help is cut to
+CUT_AT: Final = 0.75  # share of hours still open below which the others are left out
+BISECTIONS: Final = 12
 STARTS: Final = ((0.0, -3.0), (0.0, -3.0), (0.03, 0.0), (1.0, -3.0), (1.0, 3.0), (0.0, 3.0))
 """Openings to start from, and covering less air temperature, K; every other one with a firm turn."""
-STALLED: Final = 6  # tries without a better value in any hour that end a descent
 
 
 def alone(model: Model, unknown: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Bools]:
     """Solve hours by themselves, their past held; returns the unknowns and where they are closed."""
-    best, done = _descend(model, [u.copy() for u in unknown], gone, closed)
+    best, done = descend(model, [u.copy() for u in unknown], gone, closed)
     for number, (opening, cover) in enumerate(STARTS):
         if done.all():
             break
         at = np.flatnonzero(~done)
         part, before = model.take(at), gone.take(at)
-        trial, ok = _descend(part, _fresh(part, before, opening, cover), before, closed, number % 2 == 1)
+        trial, ok = descend(part, _fresh(part, before, opening, cover), before, closed, number % 2 == 1)
         for k in range(len(best)):
             best[k][at[ok]] = trial[k][ok]
         done[at[ok]] = True
@@ -63,44 +68,108 @@ def opened(c: Context) -> Floats:
     return np.asarray(np.max(np.abs(np.array(c.system.residual)), axis=0))
 
 
-def _descend(
-    model: Model, u: list[Floats], gone: Past, closed: float, firm: bool = False
-) -> tuple[list[Floats], Bools]:
-    """Newton steps, each hour with its own share of the step, halved until the open amount falls."""
-    ix = model.index
-    vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
-    context = evaluate(model, u, gone)
-    error = opened(context)
-    best, stall = error, 0
-    for _ in range(TRIES):
-        if float(error.max()) < closed or stall > STALLED:
-            break
+class _Pool:
+    """Hours that are still open, at their best iterate so far."""
+
+    def __init__(self, model: Model, u: list[Floats], gone: Past) -> None:
+        """Start with every hour of the model."""
+        self.model, self.gone = model, gone
+        self.at = np.arange(model.hours)
+        self.u, self.step = u, u
+        self.error = np.full(model.hours, np.inf)
+        self.share = np.ones(model.hours)
+
+    def take(self, keep: Bools) -> None:
+        """Go on with some hours only."""
+        at = np.flatnonzero(keep)
+        self.model, self.gone, self.at = self.model.take(at), self.gone.take(at), self.at[at]
+        self.u, self.step = [v[at] for v in self.u], [v[at] for v in self.step]
+        self.error, self.share = self.error[at], self.share[at]
+
+    def move(self, whole: bool, firm: bool, closed: float) -> None:
+        """One step; where it does not lower the open amount it is taken back and shortened."""
+        ix = self.model.index
+        first = bool(np.isinf(self.error).all())
+        trial = self.u if first else [
+            _held(self.model, k, self.u[k] + self.share * self.step[k]) for k in range(ix.size)
+        ]
+        context = evaluate(self.model, trial, self.gone)
+        error = opened(context)
         sides: list[list[Entry]] = [[r.copy()] for r in context.system.residual]
         slopes = [row[: ix.size] for row in context.system.slope]
-        x = eliminate(slopes, sides, vent_reach(context, firm), model.hours)
-        steps = [np.zeros(model.hours) if row[0] is None else row[0] for row in x]
-        size = np.ones(model.hours)
-        for k in range(ix.size):
-            limit = 0.3 if k == ix.vent else 500.0 if k in vapours else 5.0
-            np.maximum(size, np.abs(steps[k]) / limit, out=size)
-        share = np.where(error < closed, 0.0, 1.0 / size)
-        for half in range(HALVINGS):
-            trial = [_held(model, k, u[k] + share * steps[k], vapours) for k in range(ix.size)]
-            found = evaluate(model, trial, gone)
-            after = opened(found)
-            worse = after > np.maximum(error * (1.0 - 0.1 * share), 0.5 * closed)
-            if half == HALVINGS - 1 or not worse.any():
-                break
-            share = np.where(worse, 0.4 * share, share)
-        u, context, error = trial, found, after
-        stall = 0 if bool(((error < 0.5 * best) & (best >= closed)).any()) else stall + 1
-        best = np.minimum(best, error)
-    return u, error < closed
+        x = eliminate(slopes, sides, vent_reach(context, firm), self.model.hours)
+        steps = [np.zeros(self.model.hours) if row[0] is None else row[0] for row in x]
+        size = _excess(ix, steps)
+        if first or whole:
+            self.u, self.error, self.step, self.share = trial, error, steps, 1.0 / size
+            return
+        better = (error < self.error * (1.0 - 0.1 * self.share)) | (error < closed)
+        self.u = [np.where(better, new, old) for new, old in zip(trial, self.u, strict=True)]
+        self.step = [np.where(better, new, old) for new, old in zip(steps, self.step, strict=True)]
+        self.error = np.where(better, error, self.error)
+        self.share = np.where(better, 1.0 / size, SMALLER * self.share)
 
 
-def _held(model: Model, k: int, value: Floats, vapours: set[int]) -> Floats:
+def _excess(ix: Index, steps: list[Floats]) -> Floats:
+    """By how much the longest step of each hour is too long (1: not at all)."""
+    vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
+    size = np.ones(len(steps[0]))
+    for k in range(ix.size):
+        limit = 0.3 if k == ix.vent else 500.0 if k in vapours else 5.0
+        np.maximum(size, np.abs(steps[k]) / limit, out=size)
+    return size
+
+
+def descend(
+    model: Model, u: list[Floats], gone: Past, closed: float, firm: bool = False, tries: int = TRIES
+) -> tuple[list[Floats], Bools]:
+    """Newton steps of every hour by itself: whole ones first, then such as lower the open amount."""
+    best, left = [v.copy() for v in u], np.full(model.hours, np.inf)
+    pool = _Pool(model, u, gone)
+    for number in range(tries):
+        pool.move(number < WHOLE_STEPS, firm, closed)
+        going = (pool.error >= closed) & (pool.share > GIVEN_UP)
+        if going.sum() > CUT_AT * len(going) and number < tries - 1:
+            continue
+        for k, value in enumerate(pool.u):
+            best[k][pool.at] = value
+        left[pool.at] = pool.error
+        if not going.any():
+            break
+        pool.take(going)
+    return best, left < closed
+
+
+def _held(model: Model, k: int, value: Floats) -> Floats:
     """Keep an unknown where the formulas mean something."""
     ix = model.index
     if k == ix.vent:
         return np.clip(value, -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
-    return np.clip(value, 1.0, 9000.0) if k in vapours else np.clip(value, -80.0, 110.0)
+    if k == ix.air0_vapour or k < ix.screens:
+        return np.clip(value, 1.0, 9000.0)
+    return np.clip(value, -80.0, 110.0)
+
+
+def bracketed(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Floats, Bools]:
+    """The last resort: the opening between too little and too much, halved again and again.
+
+    With the opening held, an hour's balance always has its answer; the venting row says which way to go. What
+    is left when the bracket has shut is the opening at which the control changes its mind. Returns unknowns,
+    the opening that was held, and where the balance closed. `model` is a part of its own (`Model.take`): its
+    `hold` is written.
+    """
+    ix = model.index
+    low, high = np.zeros(model.hours), model.gap_max + model.vent_max
+    best, done = u, np.zeros(model.hours, dtype=bool)
+    middle = 0.5 * (low + high)
+    for _ in range(BISECTIONS):
+        middle = 0.5 * (low + high)
+        model.hold[:] = middle
+        start = [value.copy() for value in best]
+        start[ix.vent] = middle.copy()
+        best, done = descend(model, start, gone, closed)
+        model.hold[:] = np.nan
+        wants = -evaluate(model, best, gone).system.residual[ix.vent]
+        low, high = np.where(wants < 0.0, middle, low), np.where(wants < 0.0, high, middle)
+    model.hold[:] = middle
+    return best, middle, done

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 from canopy import vapour as vp
 from canopy.heatmodel import Model
 from canopy.heatregime import PAST_KINK, evaluate, vent_reach
+from canopy.heatretry import descend
 from canopy.heatrows import FILM, HISTORY, SPEED, Context, Past, State, past, soil_line
 from canopy.march import Response, march, run_modes
 from canopy.newton import Entry, eliminate
@@ -22,6 +23,10 @@ from canopy.newton import Entry, eliminate
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
+FAR_W_M2: Final = 0.3  # an hour that is open by more is first solved by itself, if there are not too many
+FAR_SHARE: Final = 0.4
+NEAR_W_M2: Final = 1e-3
+FAR_TRIES: Final = 12
 LARGEST_STEP_K: Final = 8.0
 LARGEST_STEP_PA: Final = 800.0
 SATURATED: Final = 1.004  # a step goes no further beyond saturation; fog keeps the air below
@@ -98,6 +103,7 @@ class Stepper:
         self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns
         self.answer = np.zeros((ix.size + 1, len(self.carried) + 2, model.hours))
         self.active: Ints | None = None  # None: all hours
+        self.given = np.zeros(model.hours)  # see `Response.given`
 
     def look(self) -> tuple[Context, Floats, Past]:
         """Evaluate every hour: context, open amounts, past."""
@@ -124,10 +130,41 @@ class Stepper:
             for j, entry in enumerate(row):
                 self.answer[k, j, at] = 0.0 if entry is None else entry
 
-    def step(self, c: Context, error: Floats) -> None:
-        """One marched step from a full evaluation."""
+    def step(self, c: Context, error: Floats, gone: Past) -> None:
+        """One marched step from a full evaluation; hours far from closed are first brought near by themselves.
+
+        An hour that changes its regime would otherwise do so one kink a pass, and shake the hours after it.
+        """
         self._learn(self.model, self.state.film, c, slice(None))
+        far = np.flatnonzero(error > FAR_W_M2)
+        if 0 < len(far) < FAR_SHARE * self.model.hours:
+            self._settle_far(far, gone, error)
         self._march(error)
+
+    def _settle_far(self, far: Ints, gone: Past, error: Floats) -> None:
+        """Solve far hours with their past held, then learn anew from them and the hours after them."""
+        m, s = self.model, self.state
+        part, before = m.take(far), gone.take(far)
+        unknown, done = descend(part, [u[far] for u in s.unknown], before, NEAR_W_M2, tries=FAR_TRIES)
+        if not done.any():
+            return
+        at = far[done]
+        for k, value in enumerate(unknown):
+            s.unknown[k][at] = value[done]
+        context = evaluate(part, unknown, before)
+        s.film[at] = context.film_after[done]
+        conductance, recalled = soil_line(context)
+        floor = unknown[m.index.floor]
+        drive = (floor + (conductance * floor - recalled) / m.soil.film)[done]
+        self.given[at] = drive - s.drive[at]
+        s.drive[at] = drive
+        mask = np.zeros(m.hours, dtype=bool)
+        mask[at] = True
+        anew = np.flatnonzero(mask | m.order.before(mask))
+        part, before = m.take(anew), past(m, s).take(anew)
+        context = evaluate(part, [u[anew] for u in s.unknown], before)
+        self._learn(part, s.film[anew], context, anew)
+        error[anew] = open_by(part, s.film[anew], context)
 
     def step_moving(self) -> None:
         """One marched step that evaluates only the hours that still move."""
@@ -153,7 +190,9 @@ class Stepper:
         response = Response(
             picked[:, 0], picked[:, 1], picked[:, 2:],
             1.0 + conductance / (soil.film - conductance), -(1.0 - start) / (soil.film - soil.conductance),
+            self.given,
         )  # fmt: skip
+        self.given = np.zeros(m.hours)
         carried, recalled, drive = march(m, response)
         shifted = m.order.before(carried) * (1.0 - start)
         steps: list[Floats] = [carried[0]] * (ix.size + 1)

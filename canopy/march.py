@@ -83,6 +83,7 @@ class Response:
     before: Floats
     drive_floor: Floats  # dT* per d(floor)
     drive_history: Floats  # dT* per d(history)
+    given: Floats  # T* changes that are in the iterate already, but not yet in the soil's modes
 
 
 def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
@@ -94,6 +95,7 @@ def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
     own, by_history = r.own.reshape(-1, *cut), r.history.reshape(-1, *cut)
     before = r.before.reshape(*r.before.shape[:2], *cut)
     floor_gain, history_gain = r.drive_floor.reshape(cut), r.drive_history.reshape(cut)
+    given = r.given.reshape(cut)
     first_keep, first_push = _first_step(model)
     periodic = model.case.periodic
     state, modes = np.zeros((carried, chunks)), np.zeros((len(soil.keep), chunks))
@@ -107,11 +109,11 @@ def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
             step = own[:, k] + by_history[:, k] * recalled
             step += np.einsum("rkd,kd->rd", before[:, :, k], now)
             pushed = floor_gain[k] * step[-1] + history_gain[k] * recalled
-            now = step[:-1]
+            now, whole = step[:-1], pushed + given[k]
             if k == 0:
-                ground = first_keep * ground + first_push * pushed
+                ground = first_keep * ground + first_push * whole
             else:
-                ground = soil.keep[:, None] * ground + soil.drive[:, None] * pushed
+                ground = soil.keep[:, None] * ground + soil.drive[:, None] * whole
             out[:, k], history[k], drive[k] = now, recalled, pushed
         fresh = ground - soil.keep[:, None] ** steps * modes
         ends = link_chunks(fresh, soil.keep**steps, periodic)
