@@ -1,4 +1,4 @@
-"""The table of output columns in DEVELOPERS.md, from the columns themselves. Usage: python -m tests.columns_table"""
+"""The table of output columns in DEVELOPERS.md, from the columns: python -m tests.columns_table"""
 
 from __future__ import annotations
 

@@ -62,7 +62,13 @@ def test_isothermal_enclosure_is_at_rest() -> None:
             assert np.abs(temps - temp).max() < 1e-4
 
 
-def u_value(cover: object, form: str = "gable", screens: tuple = (), drawn: float = 0.0, enclosed: bool = True) -> float:  # type: ignore[type-arg]
+def u_value(
+    cover: object,
+    form: str = "gable",
+    screens: tuple = (),  # type: ignore[type-arg]
+    drawn: float = 0.0,
+    enclosed: bool = True,
+) -> float:
     """Heat per m2 cover and kelvin of a house without leakage, crop inside, on a night of average cloud."""
     shell = house(form, leakage_per_hour=0.05, perimeter_loss=0.0, walls_screened=enclosed)
     made = case(
@@ -320,6 +326,7 @@ def test_emissive_screen_kills_the_sky() -> None:
     """A perfect mirror under the covering leaves the floor no long-wave way out."""
     mirror = cloth(0.0, 1.0, permeability=0.0, vapour_open=False)
     assert mirror.thermal.transmit == pytest.approx(thermal([0] * 3, [1] * 3).transmit)
-    r = solve(case(slice(None), FILM, (mirror,), weather=steady_night(), shell=house("arch", walls_screened=True), drawn=1.0))
+    closed = house("arch", walls_screened=True)
+    r = solve(case(slice(None), FILM, (mirror,), weather=steady_night(), shell=closed, drawn=1.0))
     assert abs(r.through_loss[-1]) < 1e-6
     assert SOIL.wetness > 0.0
