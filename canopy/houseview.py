@@ -244,21 +244,27 @@ def turn_table(
 ) -> TurnTable:
     """Return what turning the ridge in steps from 0 to below 180 degrees does to PAR at the crop plane.
 
-    A year's suns are gathered by half-month and hour of day, so that all steps cost about one trace.
+    A year's suns are gathered by half-month and hour of day. On open ground all steps are one trace, with the
+    suns turned about one house; with hills round the house every step is traced anew.
     """
     suns = _gather(weather)
     ridge = np.arange(0.0, 180.0 - 1e-9, step_deg)
+    if horizon is None:
+        turned = (house.ridge_azimuth + suns.azimuth - ridge[:, None]).ravel()
+        parts = _parts(trace(house, np.tile(suns.zenith, len(ridge)), turned), solar)
+        every = [(row, *parts[1:]) for row in parts[0].reshape(len(ridge), -1)]
+    else:
+        every = [
+            _parts(
+                trace(replace(house, ridge_azimuth=float(a)), suns.zenith, suns.azimuth, horizon=horizon),
+                solar,
+            )
+            for a in ridge
+        ]
     rows = []
-    for azimuth in ridge:
-        paths = trace(
-            replace(house, ridge_azimuth=float(azimuth)), suns.zenith, suns.azimuth, horizon=horizon
-        )
-        arrives = _arrives(paths, solar)
-        count = len(paths.day)
-        direct, sky = arrives[:count] * paths.visible, arrives[count:]
-        dome, band = float(sky @ paths.grid.dome), float(sky @ paths.grid.band)
+    for direct, dome, band in every:
         row = []
-        for use, k in ((np.ones(count, dtype=bool), 0), (suns.winter, 1)):
+        for use, k in ((np.ones(len(suns.zenith), dtype=bool), 0), (suns.winter, 1)):
             beam, around = suns.beam[use], suns.around[use]
             inside = (beam + around) @ direct[use] + suns.dome[k] * dome + suns.band[k] * band
             row += [inside / (beam.sum() + around.sum() + suns.dome[k] + suns.band[k])]
@@ -266,3 +272,13 @@ def turn_table(
         rows.append(row)
     table = np.array(rows)
     return TurnTable(ridge, table[:, 0], table[:, 2], table[:, 1], table[:, 3])
+
+
+def _parts(paths: Paths, solar: SolarOptics) -> tuple[Floats, float, float]:
+    """Return what arrives of each sun's light (0 below the horizon), of the dome and of the band."""
+    arrives = _arrives(paths, solar)
+    count = len(paths.day)
+    direct = np.zeros(paths.hours)
+    direct[paths.day] = arrives[:count] * paths.visible
+    sky = arrives[count:]
+    return direct, float(sky @ paths.grid.dome), float(sky @ paths.grid.band)

@@ -25,6 +25,8 @@ RIDGE: Final = Mark("ridge", INK, "dash", "none")
 LIGHT_SCALE: Final = ((0.0, "#16263f"), (0.35, "#2f6f8f"), (0.65, "#8fbfa8"), (1.0, "#fff6cf"))
 """Dark to bright in even steps of lightness: reads without telling hues apart."""
 
+FINE_DEG, COARSE_DEG = 15.0, 30.0
+
 
 def sky_figure(run: Run) -> Figure:
     """Return the map of every candidate, all on one scale, with the sun's paths of the place."""
@@ -127,11 +129,12 @@ def _layout() -> Spec:
 
 
 def turned(run: Run) -> TurnTable:
-    """Return what turning the ridge does, for the first candidate."""
+    """Return what turning the ridge does, for the first candidate; arches among hills in coarser steps."""
     one = run.candidates[0]
     points = run.study.keys.site.horizon
     hills = tuple((p[0], p[1]) for p in points) if points else None
-    return turn_table(one.house, one.covering.solar_dry, run.weather, horizon=hills)
+    step = COARSE_DEG if hills and one.house.form == "arch" else FINE_DEG
+    return turn_table(one.house, one.covering.solar_dry, run.weather, step_deg=step, horizon=hills)
 
 
 def turn_words(table: TurnTable, name: str, ridge: float) -> str:

@@ -75,6 +75,15 @@ def test_turning_the_ridge() -> None:
     assert table.year[0] == pytest.approx(arrives.sum() / RECORD.ghi.sum(), abs=0.004)
 
 
+@pytest.mark.parametrize("form", ["gable", "arch"])
+def test_turning_on_open_ground_is_turning_among_hills_of_no_height(form: str) -> None:
+    house = replace(HOUSE, form=form, rise=2.0, spans=3, ridge_azimuth=20.0, pitch_other=35.0)
+    one = turn_table(house, glass(), RECORD, step_deg=60.0)
+    other = turn_table(house, glass(), RECORD, step_deg=60.0, horizon=((0.0, 0.0), (180.0, 0.0)))
+    np.testing.assert_allclose(one.year, other.year, atol=1e-9)
+    np.testing.assert_allclose(one.winter_beam, other.winter_beam, atol=1e-9)
+
+
 def test_sun_paths_reach_the_known_noon_heights() -> None:
     # 90 - |latitude - declination|, obliquity 23.44 degrees
     for latitude, heights in ((52.0, (14.56, 38.0, 61.44)), (-35.0, (78.44, 55.0, 31.56))):
