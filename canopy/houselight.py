@@ -20,6 +20,9 @@ from canopy.sheettable import SheetTable, place, sheet_table
 from canopy.structure import STRUCTURE_ABSORPTANCE
 from weather.record import Weather
 
+SUNSHINE_W_M2 = 120.0
+"""Direct normal light from which the sun is said to shine: WMO-No. 8 (2018), chapter 8."""
+
 Floats = NDArray[np.float64]
 Rows = NDArray[np.intp]
 
@@ -89,7 +92,8 @@ def inside(
         return out
 
     sunny = np.zeros(hours)
-    sunny[lit] = house.sunny[lit] * (outside_beam.sum(axis=0) > 0.0)
+    shines = (weather.dni[lit] >= SUNSHINE_W_M2) & (flux.beam[-1].sum(axis=0) > 0.0)
+    sunny[lit] = house.sunny[lit] * shines
     bands = len(outside_beam)
     return Light(
         outside_beam=full(outside_beam),

@@ -1,4 +1,4 @@
-"""What a grower sees of a house: light by month and by sun height, sky map, turning the ridge."""
+"""What a grower sees of a house: sky map, sun paths, turning the ridge."""
 
 from __future__ import annotations
 
@@ -9,7 +9,6 @@ from numpy.typing import NDArray
 
 from canopy.bands import SOLAR
 from canopy.house import House
-from canopy.light import HouseTransmission, SunBands
 from canopy.lightpath import Paths, trace
 from canopy.optics import SolarOptics
 from canopy.passing import Sheets
@@ -19,34 +18,6 @@ from canopy.skyparts import Hills, sky_shares
 from weather.record import Site, Weather
 
 PAR = SOLAR.index("par")
-HEIGHT_EDGES_DEG = (0.0, 10.0, 20.0, 30.0, 40.0, 50.0, 60.0, 90.0)
-DIRECT_SUN_W_M2 = 120.0
-"""Direct normal light from which an hour counts as sunshine: WMO-No. 8 (2018), ch. 8."""
-
-
-@dataclass(frozen=True)
-class MonthLight:
-    """PAR at the crop plane by month, before light returns from the crop; (12,), NaN where there is none."""
-
-    transmission: Floats
-    transmission_beam: Floats
-    transmission_diffuse: Floats
-    diffuse_share_outside: Floats
-    diffuse_share_inside: Floats
-    dli_outside: Floats  # mol m-2 d-1
-    dli_inside: Floats  # mol m-2 d-1 under covering and structure, no screen
-    direct_sun_h: Floats  # hours of direct sun on the crop, sunlit share of the plane counted
-
-
-@dataclass(frozen=True)
-class HeightLight:
-    """PAR transmission by height of the sun, energy-weighted; (H,), NaN where the sun does not stand."""
-
-    low_deg: Floats
-    high_deg: Floats
-    hours: Floats
-    transmission_beam: Floats
-    transmission: Floats
 
 
 @dataclass(frozen=True)
@@ -78,74 +49,9 @@ class TurnTable:
     winter_beam: Floats
 
 
-def _ratio(part: Floats, whole: Floats) -> Floats:
-    """Return part / whole, NaN where the whole is nothing."""
-    return np.asarray(np.where(whole > 0.0, part / np.where(whole > 0.0, whole, 1.0), np.nan))
-
-
 def month_numbers(weather: Weather) -> NDArray[np.int64]:
     """Return the month (0 ... 11) of every hour."""
     return np.asarray(weather.time.astype("datetime64[M]").astype(np.int64) % 12)
-
-
-def _par(house: HouseTransmission, sun: SunBands, weather: Weather) -> tuple[Floats, Floats, Floats, Floats]:
-    """Return outside beam and diffuse PAR and what of each arrives, W/m2, (N,)."""
-    up = np.maximum(np.cos(np.radians(weather.zenith)), 0.0)
-    beam, diffuse = sun.direct[PAR] * up, sun.diffuse[PAR]
-    arrives = beam * (house.beam[PAR] + house.beam_scattered[PAR])
-    return beam, diffuse, arrives, diffuse * house.sky[PAR]
-
-
-def by_month(house: HouseTransmission, sun: SunBands, weather: Weather) -> MonthLight:
-    """Return the house's light by month, screens stowed and crop black."""
-    month = month_numbers(weather)
-
-    def total(values: Floats) -> Floats:
-        return np.asarray(np.bincount(month, weights=values, minlength=12), dtype=np.float64)
-
-    beam, diffuse, beam_in, diffuse_in = _par(house, sun, weather)
-    still_beam = beam * house.beam[PAR]
-    days = total(np.full(len(weather), weather.step_s / 86400.0))
-    outside = total(beam + diffuse)
-    inside = total(beam_in + diffuse_in)
-    mol = weather.step_s * 1e-6
-    photons_out = beam * sun.direct_umol_per_j + diffuse * sun.diffuse_umol_per_j
-    photons_in = beam_in * sun.direct_umol_per_j + diffuse_in * sun.diffuse_umol_per_j
-    sunshine = (weather.dni >= DIRECT_SUN_W_M2) * house.sunny * weather.step_s / 3600.0
-    return MonthLight(
-        transmission=_ratio(inside, outside),
-        transmission_beam=_ratio(total(beam_in), total(beam)),
-        transmission_diffuse=_ratio(total(diffuse_in), total(diffuse)),
-        diffuse_share_outside=_ratio(total(diffuse), outside),
-        diffuse_share_inside=_ratio(inside - total(still_beam), inside),
-        dli_outside=_ratio(total(photons_out) * mol, days),
-        dli_inside=_ratio(total(photons_in) * mol, days),
-        direct_sun_h=total(sunshine),
-    )
-
-
-def by_height(house: HouseTransmission, sun: SunBands, weather: Weather) -> HeightLight:
-    """Return the house's PAR transmission by height of the sun."""
-    edges = np.array(HEIGHT_EDGES_DEG)
-    height = 90.0 - weather.zenith
-    place = np.where(
-        height > 0.0, np.clip(np.searchsorted(edges, height, side="right") - 1, 0, len(edges) - 2), -1
-    )
-    up = place >= 0
-
-    def total(values: Floats) -> Floats:
-        return np.asarray(
-            np.bincount(place[up], weights=values[up], minlength=len(edges) - 1), dtype=np.float64
-        )
-
-    beam, diffuse, beam_in, diffuse_in = _par(house, sun, weather)
-    return HeightLight(
-        low_deg=edges[:-1],
-        high_deg=edges[1:],
-        hours=total(np.full(len(weather), weather.step_s / 3600.0)),
-        transmission_beam=_ratio(total(beam_in), total(beam)),
-        transmission=_ratio(total(beam_in + diffuse_in), total(beam + diffuse)),
-    )
 
 
 def _arrives(paths: Paths, solar: SolarOptics) -> Floats:

@@ -13,7 +13,6 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from canopy.archlight import ArchLight, arch_light
 from canopy.gablelight import GableLight, gable_light
@@ -202,8 +201,3 @@ class _Filler:
         again = 1.0 - self.solar.reflect_inside * (1.0 - self.paths.down)
         kept: Floats = self.solar.absorbed_from_inside * self.paths.sky_open / again
         return kept
-
-
-def sky_directions(paths: Paths) -> NDArray[np.float64]:
-    """Return zenith and azimuth of the sky grid, (2, Q) degrees."""
-    return np.stack([paths.grid.zenith_deg, paths.grid.azimuth_deg])

@@ -244,6 +244,20 @@ def test_night_is_dark() -> None:
     assert (GLASS.beam[:, RECORD.zenith >= 90.0] == 0.0).all()
 
 
+def test_direct_sun_needs_sunshine_and_a_way_in() -> None:
+    # WMO-No. 8 (2018), ch. 8: the sun shines from 120 W/m2 of direct normal light on
+    record = replace(RECORD, dni=0.2 * RECORD.dni)
+    faint, bright = (record.dni > 0.0) & (record.dni < 120.0), record.dni >= 120.0
+    assert faint.any()
+    assert bright.any()
+    screens, below = (fabric(0.0, 0.0, 0.5),), stand(0.7, 0.15)
+    still = inside(sunlight(record), GLASS, record, screens, np.zeros((1, HOURS)), below)
+    assert (still.sunny[faint] == 0.0).all()
+    np.testing.assert_array_equal(still.sunny[bright], GLASS.sunny[bright])
+    dark = inside(sunlight(record), GLASS, record, screens, np.ones((1, HOURS)), below)
+    assert dark.sunny.max() == 0.0
+
+
 def test_parts_are_finite_in_polar_night_and_at_the_equator() -> None:
     for latitude in (70.0, 0.0, -60.0):
         record = weather(latitude)

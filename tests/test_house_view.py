@@ -8,49 +8,13 @@ import numpy as np
 import pytest
 
 from canopy.floormap import floor_map, season_light
-from canopy.houseview import by_height, by_month, polar_map, sun_paths, turn_table
-from canopy.light import SunBands
+from canopy.houseview import polar_map, sun_paths, turn_table
 from canopy.lightpath import trace, transmit
-from tests.housecase import PLAIN, clear, glass, weather
+from tests.housecase import PLAIN, glass, weather
 from weather.record import Site
 
 RECORD = weather()
 HOUSE = replace(PLAIN, spans=10, length=100.0, pitch=24.0, pitch_other=24.0)
-SUN = SunBands(
-    np.full((5, 1), 0.2) * RECORD.dni,
-    np.full((5, 1), 0.2) * RECORD.dhi,
-    np.full(8760, 4.5),
-    np.full(8760, 4.6),
-)
-FOUND = transmit(trace(HOUSE, RECORD.zenith, RECORD.azimuth), glass(0.3), RECORD)
-
-
-def test_months_add_up_to_the_year() -> None:
-    months = by_month(FOUND, SUN, RECORD)
-    days = np.array([31, 28, 31, 30, 31, 30, 31, 31, 30, 31, 30, 31])
-    up = np.maximum(np.cos(np.radians(RECORD.zenith)), 0.0)
-    mol = (SUN.direct[1] * up * 4.5 + SUN.diffuse[1] * 4.6).sum() * 3600e-6
-    assert (months.dli_outside * days).sum() == pytest.approx(mol, rel=1e-9)
-    ratio = months.dli_inside / months.dli_outside
-    np.testing.assert_allclose(ratio, months.transmission, rtol=0.01)
-    assert (months.diffuse_share_inside > months.diffuse_share_outside).all()
-    assert months.direct_sun_h.sum() == pytest.approx((FOUND.sunny * (RECORD.dni >= 120.0)).sum())
-
-
-def test_clear_house_passes_all_in_every_month_and_height() -> None:
-    found = transmit(trace(HOUSE, RECORD.zenith, RECORD.azimuth), clear(), RECORD)
-    np.testing.assert_allclose(by_month(found, SUN, RECORD).transmission, 1.0, atol=1e-9)
-    heights = by_height(found, SUN, RECORD)
-    seen = heights.hours > 0
-    np.testing.assert_allclose(heights.transmission[seen], 1.0, atol=1e-9)
-    # the sun stands at most 90 - 52 + 23.4 = 61.4 degrees high at 52 N
-    assert heights.hours[-1] > 0
-    assert heights.hours.sum() == pytest.approx((RECORD.zenith < 90.0).sum())
-
-
-def test_low_sun_passes_less() -> None:
-    heights = by_height(FOUND, SUN, RECORD)
-    assert heights.transmission_beam[-1] > heights.transmission_beam[1]
 
 
 def test_polar_map_is_even_about_the_ridge() -> None:
