@@ -198,7 +198,8 @@ def budget(plan: Plan, place: Place) -> Budget:
     chosen = place.chosen(plan.covering)
     covering = chosen.covering
     screens, rules = screens_of(plan, place.study)
-    leaf, ground = choose_leaf(plan, place.study), library.ground(plan.crop.ground_cover)
+    leaf, leaf_notes = choose_leaf(plan, place.study)
+    ground = library.ground(plan.crop.ground_cover)
     house = make_house(plan)
     climate = _climate(plan, place, rules)
     lai = leaf_area(plan, place)
@@ -243,13 +244,18 @@ def budget(plan: Plan, place: Place) -> Budget:
         blend(dry, wet, heat.wet),
         case,
         heat,
-        _notes(plan, place, chosen),
+        (*_notes(plan, place, chosen, house), *leaf_notes),
     )
 
 
-def _notes(plan: Plan, place: Place, chosen: Chosen) -> tuple[str, ...]:
+def _notes(plan: Plan, place: Place, chosen: Chosen, house: House) -> tuple[str, ...]:
     notes = list(chosen.notes)
     keys = plan.house
+    if house.crop_plane_height < plan.crop.height:
+        notes.append(
+            f"light is taken at gutter height, {house.crop_plane_height:g} m, where the crop is taller "
+            f"({plan.crop.height:g} m)"
+        )
     if keys.wall_covering is not None or keys.gable_covering is not None:
         notes.append(
             "walls or gable ends carry their own covering for light; "

@@ -67,8 +67,8 @@ def _own_covering(keys: CoveringKeys, study: Study) -> Chosen:
     return Chosen(fitted.covering, keys, tuple(f"{keys.name}: {note}" for note in said if note))
 
 
-def choose_leaf(plan: Plan, study: Study) -> Leaf:
-    """Return the leaf type of a candidate: by name, or from a CSV beside the study."""
+def choose_leaf(plan: Plan, study: Study) -> tuple[Leaf, tuple[str, ...]]:
+    """Return the leaf type of a candidate, by name or from a CSV beside the study, and what was assumed."""
     if is_file_name(plan.crop.leaf):
         from canopy.leaves import leaf_from_csv
 
@@ -76,4 +76,4 @@ def choose_leaf(plan: Plan, study: Study) -> Leaf:
             return leaf_from_csv(study.folder / plan.crop.leaf)
         except UserError as error:
             raise UserError(f"{study.label}: {error}") from None
-    return library.leaf(plan.crop.leaf)
+    return library.leaf(plan.crop.leaf), ()

@@ -66,7 +66,8 @@ class DesignNight:
     drawn: NightLoad | None  # None: no screen is drawn at night
     recovery: Recovery
     hand: HandCheck
-    hold_open_c: float | None  # outside temperature at which the design heat still holds, screens open
+    hold_open_c: float | None  # outside temperature at which the design heat still holds, screens open;
+    # None: no screen is drawn, no heat is needed, or only a clear sky makes the house colder than the air
     pipes_note: str = ""  # what the study's pipes lack on this night, if they lack anything
 
     @property
@@ -281,7 +282,7 @@ def design_night(
         notes += [state_words + note] if note else []
     opened, shut = loads[0], (loads[1] if len(loads) > 1 else None)
     hold = None
-    if shut is not None and opened.total_w_m2 > 0.0:
+    if shut is not None and opened.total_w_m2 > 0.0 and inside > outside.temp_c:
         hold = inside - (inside - outside.temp_c) * min(1.0, shut.total_w_m2 / opened.total_w_m2)
     return DesignNight(
         outside=outside,

@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from canopy.spectrumcheck import check_spectrum
+from canopy.spectrumcheck import NEEDED_UM, check_spectrum
 from weather.errors import UserError
 
 Floats = NDArray[np.float64]
@@ -57,8 +57,8 @@ class LabSpectrum:
     notes: tuple[str, ...]
 
 
-def read_lab_csv(path: Path) -> LabSpectrum:
-    """Return the spectrum in a CSV file.
+def read_lab_csv(path: Path, *, needed_um: tuple[float, float] = NEEDED_UM) -> LabSpectrum:
+    """Return the spectrum in a CSV file; it must cover `needed_um`.
 
     Separator comma, semicolon or tab (decimal comma with the last two); lines that begin with # are skipped;
     the first other line names the columns. Raises UserError with file and row for whatever cannot be read.
@@ -77,7 +77,9 @@ def read_lab_csv(path: Path) -> LabSpectrum:
         values = {key: column[::-1] for key, column in values.items()}
     transmit, *others = (values.get(key) for key in _VALUES)
     assert transmit is not None  # `_columns` asks for it
-    checked = check_spectrum(path.name, wavelength, transmit, *others, rows=rows, min_rows=MIN_ROWS)
+    checked = check_spectrum(
+        path.name, wavelength, transmit, *others, needed_um=needed_um, rows=rows, min_rows=MIN_ROWS
+    )
     return LabSpectrum(
         checked.wavelength_um,
         checked.transmit,

@@ -5,14 +5,12 @@ Light on purpose: names need the standard library only, since `check` looks them
 
 from __future__ import annotations
 
-import csv
-import math
 import tomllib
 from collections.abc import Mapping
 from functools import cache
 from importlib.resources import files
 from pathlib import Path
-from typing import Any, Final
+from typing import TYPE_CHECKING, Any, Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,11 +19,11 @@ from canopy.bands import SOLAR, THERMAL
 from canopy.optics import Leaf
 from weather.errors import UserError, nearest
 
+if TYPE_CHECKING:
+    from canopy.labcsv import LabSpectrum
+
 Floats = NDArray[np.float64]
 
-MAX_BYTES: Final = 5_000_000
-MAX_ROWS: Final = 20_000
-COLUMNS: Final = ("wavelength", "reflectance", "transmittance")
 REACH_UM: Final = (0.40, 2.30)  # a spectrum must cover this; beyond its ends the end values hold
 
 
@@ -61,93 +59,45 @@ def leaf(name: str) -> Leaf:
     )
 
 
-def leaf_from_csv(path: Path, like: str = "generic") -> Leaf:
-    """Return a leaf from a spectrum: a CSV with the columns wavelength, reflectance, transmittance.
+def leaf_from_csv(path: Path, like: str = "generic") -> tuple[Leaf, tuple[str, ...]]:
+    """Return a leaf from a spectrum, and in words what was read into the file or clipped as noise.
 
-    Wavelengths in nm or µm (above 100: nm), rising; values 0 to 1, or 0 to 100 if the header says "%".
     Bands are means weighted by ASTM G173 global sunlight; emissivity is that of the shipped leaf `like`.
 
     Errors: UserError with file, row and reason.
     """
-    wave, reflect, transmit = read_spectrum(path)
-    shipped = leaf(like)
-    return Leaf(
+    lab = read_spectrum(path)
+    shipped, wave = leaf(like), lab.wavelength_um
+    assert lab.front is not None  # `read_spectrum` asks for it
+    made = Leaf(
         name=path.name,
         title=f"leaf spectrum {path.name}",
         provenance="published",
         source=f"spectrum {path.name}, {len(wave)} rows, {wave[0]:g}-{wave[-1]:g} µm, weighted by ASTM G173 "
         f'global sunlight, end values held beyond; emissivity as for "{shipped.name}"',
-        reflect=_band_means(wave, reflect),
-        transmit=_band_means(wave, transmit),
+        reflect=_band_means(wave, lab.front),
+        transmit=_band_means(wave, lab.transmit),
         emissivity=np.broadcast_to(shipped.emissivity, (len(THERMAL),)).copy(),
     )
+    return made, tuple(f"leaf spectrum {note}" for note in lab.notes)
 
 
-def read_spectrum(path: Path) -> tuple[Floats, Floats, Floats]:
-    """Return wavelength (µm), reflectance and transmittance of a CSV, (M,) each, after all checks."""
-    where = f"leaf spectrum {path.name}"
-    rows = list(enumerate(csv.reader(_text(path, where).splitlines()), start=1))
-    rows = [(at, row) for at, row in rows if any(cell.strip() for cell in row) and not row[0].startswith("#")]
-    if not rows:
-        raise UserError(f"{where}: empty; a header and rows of {', '.join(COLUMNS)} are needed")
-    places, percent = _header(where, rows[0][1])
-    if len(rows) > MAX_ROWS:
-        raise UserError(f"{where}: {len(rows)} rows; at most {MAX_ROWS}")
-    found = np.array([_numbers(f"{where}, row {at}", row, places) for at, row in rows[1:]]).reshape(-1, 3)
-    found[:, 1:] /= 100.0 if percent else 1.0
-    if len(found) and found[:, 0].max() > 100.0:
-        found[:, 0] /= 1000.0
-    lines = [at for at, _ in rows[1:]]
-    for at, step in zip(lines[1:], np.diff(found[:, 0]), strict=True):
-        if step <= 0.0:
-            raise UserError(f"{where}, row {at}: wavelengths must rise")
-    for at, (wave, r, t) in zip(lines, found, strict=True):
-        if not (0.0 <= r <= 1.0 and 0.0 <= t <= 1.0 and r + t <= 1.0):
-            raise UserError(
-                f"{where}, row {at}: reflectance {r:g}, transmittance {t:g} at {wave:g} µm; "
-                'each 0 to 1 and together at most 1 (write "%" in the header for percent)'
-            )
-    if not len(found) or found[0, 0] > REACH_UM[0] or found[-1, 0] < REACH_UM[1]:
-        span = f"{found[0, 0]:g}-{found[-1, 0]:g} µm" if len(found) else "no rows"
-        raise UserError(f"{where}: {span}; it must cover {REACH_UM[0]:g}-{REACH_UM[1]:g} µm")
-    return found[:, 0], found[:, 1], found[:, 2]
+def read_spectrum(path: Path) -> LabSpectrum:
+    """Return a leaf's spectrum: wavelength, reflectance and transmittance from .40 to 2.30 µm.
 
+    Read and checked like a laboratory's covering (`labcsv.read_lab_csv`).
 
-def _text(path: Path, where: str) -> str:
-    if not path.is_file():
-        raise UserError(f"{where}: no such file")
-    if path.stat().st_size > MAX_BYTES:
-        raise UserError(f"{where}: {path.stat().st_size} bytes; at most {MAX_BYTES}")
+    Errors: UserError with file, row and reason.
+    """
+    from canopy.labcsv import read_lab_csv
+
     try:
-        return path.read_text(encoding="utf-8-sig")
-    except (UnicodeDecodeError, OSError) as error:
-        raise UserError(f"{where}: cannot be read as UTF-8 text ({type(error).__name__})") from None
-
-
-def _header(where: str, row: list[str]) -> tuple[list[int], bool]:
-    """Return where the three columns stand, and whether values are in percent."""
-    names = [cell.strip().lower() for cell in row]
-    places = []
-    for column in COLUMNS:
-        hits = [k for k, name in enumerate(names) if name.startswith(column)]
-        if len(hits) != 1:
-            raise UserError(f"{where}, row 1: {len(hits)} columns named {column}; write {', '.join(COLUMNS)}")
-        places.append(hits[0])
-    return places, any("%" in names[k] for k in places[1:])
-
-
-def _numbers(where: str, row: list[str], places: list[int]) -> list[float]:
-    values = []
-    for name, place in zip(COLUMNS, places, strict=True):
-        text = row[place].strip() if place < len(row) else ""
-        try:
-            value = float(text)
-        except ValueError:
-            value = math.nan
-        if not math.isfinite(value):
-            raise UserError(f'{where}: {name} is "{text[:20]}"; a number is needed')
-        values.append(value)
-    return values
+        lab = read_lab_csv(path, needed_um=REACH_UM)
+    except UserError as error:
+        raise UserError(f"leaf spectrum {error}") from None
+    if lab.front is None:
+        raise UserError(f"leaf spectrum {path.name}, header: a leaf needs reflectance beside transmittance")
+    return lab
 
 
 def _band_means(wave: Floats, values: Floats) -> Floats:

@@ -34,7 +34,11 @@ _TERRAIN: Final[dict[Literal["open", "normal", "sheltered"], tuple[float, float]
 
 
 def make_house(plan: Plan) -> House:
-    """Return the house of a candidate; the crop plane is the top of the crop."""
+    """Return the house of a candidate; the crop plane is the top of the crop.
+
+    Under an arch, where a crop may be taller than the gutter (a tunnel from the ground), the plane lies at
+    the lower edge of the gutter. A crop above the crown keeps its height, and the house is refused.
+    """
     keys = plan.house
     pitch = keys.pitch if keys.pitch is not None else DEFAULT_PITCH_DEG
     return House(
@@ -54,8 +58,17 @@ def make_house(plan: Plan) -> House:
         bar_spacing=keys.bar_spacing,
         bar_width=keys.bar_width,
         bar_depth=keys.bar_depth,
-        crop_plane_height=plan.crop.height,
+        crop_plane_height=_crop_plane(plan),
     )
+
+
+def _crop_plane(plan: Plan) -> float:
+    """Return the height, m, at which light is taken."""
+    keys, height = plan.house, plan.crop.height
+    if keys.form != "arch" or height > keys.gutter_height + (keys.rise or 0.0):
+        return height
+    depth = keys.gutter_depth if keys.gutter_width > 0.0 else 0.0
+    return max(0.0, min(height, keys.gutter_height - depth))
 
 
 def wind_factor(exposure: Literal["open", "normal", "sheltered"], height_m: float) -> float:

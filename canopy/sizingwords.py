@@ -17,6 +17,7 @@ Bools = NDArray[np.bool_]
 Times = NDArray[np.datetime64]
 
 WHOLE_YEAR_SHARE: Final = 0.95
+SAME_W_M2: Final = 0.5  # closer than this both are printed alike
 S_PER_H: Final = 3600.0
 
 
@@ -52,11 +53,12 @@ def hours_words(hours: float) -> str:
 def explain(told: Told) -> tuple[str, ...]:
     """Return the comparison of simulated hours and design night in sentences."""
     peak = int(np.argmax(told.load))
-    when = hour_words(told.time[peak])
-    said = [
-        f"Highest simulated hour {told.load[peak]:.0f} W/m2 ({when}); exceeded in 35 h "
-        f"a year {told.exceeded[0]:.0f}, in 88 h {told.exceeded[1]:.0f} W/m2."
-    ]
+    said = ["No simulated hour takes heat."]
+    if told.load[peak] > 0.0:
+        said = [
+            f"Highest simulated hour {told.load[peak]:.0f} W/m2 ({hour_words(told.time[peak])}); exceeded in "
+            f"35 h a year {told.exceeded[0]:.0f}, in 88 h {told.exceeded[1]:.0f} W/m2."
+        ]
     if told.typical:
         said.append("The record is a typical year: its extremes are removed, a colder year is not in it.")
     if told.years < WHOLE_YEAR_SHARE:
@@ -65,7 +67,7 @@ def explain(told: Told) -> tuple[str, ...]:
         said.append("The study limits the heating: simulated loads are cut off at that limit.")
     if told.night is not None:
         said += _night(told.night)
-        said.append(_why(float(told.load[peak]), told.night))
+        said += _why(float(told.load[peak]), told.night)
     if told.many is not None:
         peaks = told.many.peak_w_m2
         said.append(
@@ -93,27 +95,32 @@ def _night(night: DesignNight) -> list[str]:
         f"{_screens(night)}; on paper (U x area) {night.hand.total_w_m2:.0f} W/m2 without a screen."
     ]
     if night.drawn is not None:
-        said.append(
-            f"The same night with screens open takes {night.open.total_w_m2:.0f} W/m2; with the heat of the "
-            f"drawn screen an open house holds its set-point down to {night.hold_open_c:.1f} °C outside."
-        )
+        opened = f"The same night with screens open takes {night.open.total_w_m2:.0f} W/m2"
+        if night.hold_open_c is not None:
+            opened += (
+                "; with the heat of the drawn screen an open house holds its set-point down to "
+                f"{night.hold_open_c:.1f} °C outside"
+            )
+        said.append(f"{opened}.")
     said.append(f"Recovery: {night.recovery.text}.")
     if night.pipes_note:
         said.append(f"On the design night the pipes fall short: {night.pipes_note}.")
     return said
 
 
-def _why(peak: float, night: DesignNight) -> str:
-    """Return why the two answers differ."""
+def _why(peak: float, night: DesignNight) -> list[str]:
+    """Return why the two answers differ, if they do."""
+    if abs(peak - night.design_w_m2) < SAME_W_M2:
+        return []
     if peak > night.design_w_m2:
-        return (
+        return [
             "The simulated peak is higher than the design night: it falls on a colder or windier hour, or on "
             "the rise of the set-point, when air, crop and pipes take up heat as well."
-        )
-    return (
+        ]
+    return [
         "The design night is higher than the simulated peak: it holds wind, clear sky and cold together for "
         "a whole night and takes nothing from the soil, which in a real night gives heat back."
-    )
+    ]
 
 
 def _opening(told: Told) -> list[str]:

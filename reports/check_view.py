@@ -144,7 +144,9 @@ def _crop(plan: Plan) -> str:
     rows = "closed stand"
     if crop.row_width is not None and crop.row_spacing is not None:
         rows = f"rows of {crop.row_width:g} m every {crop.row_spacing:g} m"
-    return f"{crop.leaf}, {area}, {rows}, {crop.height:g} m high, over {crop.ground_cover}"
+    text = f"{crop.leaf}, {area}, {rows}, {crop.height:g} m high, over {crop.ground_cover}"
+    plane = make_house(plan).crop_plane_height
+    return text if plane >= crop.height else f"{text}; light is taken at gutter height, {plane:g} m"
 
 
 def _climate(plan: Plan) -> str:

@@ -54,9 +54,8 @@ def comparison(run: Run, rows: Sequence[Summary], show: Display) -> Table:
         ("boiler", show.text("kW"), lambda r, c: show.bare(c.sizing.boiler_kw, "kW")),
     ]
     if priced:
-        columns.append(
-            ("fuel, whole house", rows[0].currency, lambda r, c: say.money(replace(r, currency="")))
-        )
+        what = "fuel, whole house" + ("" if len(run.hours) == len(run.weather) else " and record")
+        columns.append((what, rows[0].currency, lambda r, c: say.money(replace(r, currency=""))))
     body = tuple(
         Row(one.name, tuple(cell(one, cand) for _, _, cell in columns), mark)
         for one, mark, cand in zip(rows, marks_of(run), run.candidates, strict=True)
@@ -129,19 +128,18 @@ def light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     inside = [mean_dli(run, one)[1] for one in run.candidates]
     best, worst = int(np.argmin(outside)), int(np.argmax(outside))
     months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
-    lead = [
-        f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]} and "
-        f"{number(outside[worst], 1)} in {months[worst]}."
-    ]
+    most = "" if best == worst else f" and {number(outside[worst], 1)} in {months[worst]}"
+    lead = [f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]}{most}."]
     at_best = [values[best] for values in inside]
-    if all(np.isfinite(at_best)) and len(rows) > 1:
-        top, low = int(np.argmax(at_best)), int(np.argmin(at_best))
+    top, low = int(np.argmax(at_best)), int(np.argmin(at_best))
+    if all(np.isfinite(at_best)) and number(at_best[top], 1) != number(at_best[low], 1):
         lead.append(
             f"In {months[best]} the crop gets {number(at_best[top], 1)} mol/m² a day under {rows[top].name} "
             f"and {number(at_best[low], 1)} under {rows[low].name}."
         )
-    elif len(rows) == 1 and np.isfinite(at_best[0]):
-        lead.append(f"In {months[best]} the crop gets {number(at_best[0], 1)} mol/m² a day.")
+    elif np.isfinite(at_best[0]):
+        under = "" if len(rows) == 1 else " under every candidate"
+        lead.append(f"In {months[best]} the crop gets {number(at_best[0], 1)} mol/m² a day{under}.")
     if not all(np.isfinite(values).all() for values in inside):
         lead.append("Months without a crop have no daily light at the crop.")
     head = ("candidate", *month_labels(run.months))

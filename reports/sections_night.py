@@ -76,15 +76,16 @@ def _night_words(
     order = sorted(range(len(rows)), key=lambda k: rows[k].total["night_sky_loss_kwh_m2"])
     low, high = order[0], order[-1]
     span = say.period(run)
+    low_said, high_said = (show.say(rows[k].total["night_sky_loss_kwh_m2"], "kWh/m2") for k in (low, high))
+    most = "Most is lost by " if low_said != high_said else ""
     lines = [
-        f"Most is lost by {rows[high].name}: {show.say(rows[high].total['night_sky_loss_kwh_m2'], 'kWh/m2')} "
-        f"to the night sky {span}, {percent(patterns[high].through_share)} of it straight through the "
-        "covering from leaves, floor and screens."
+        f"{most}{rows[high].name}: {high_said} to the night sky "
+        f"{span}, {percent(patterns[high].through_share)} of it straight through the covering from leaves, "
+        "floor and screens."
     ]
-    if low != high:
+    if low_said != high_said:
         lines.append(
-            f"Least is lost by {rows[low].name}: "
-            f"{show.say(rows[low].total['night_sky_loss_kwh_m2'], 'kWh/m2')}, "
+            f"Least is lost by {rows[low].name}: {low_said}, "
             f"{percent(patterns[low].through_share)} straight through."
         )
     clear, cloudy = patterns[high].clear_mean, patterns[high].cloudy_mean

@@ -99,9 +99,12 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     if len(rows) > 1:
         small = min(run.candidates, key=lambda c: c.sizing.boiler_kw)
         large = max(run.candidates, key=lambda c: c.sizing.boiler_kw)
+        least, most = show.say(small.sizing.boiler_kw, "kW"), show.say(large.sizing.boiler_kw, "kW")
         lines.append(
-            f"The boiler ranges from {show.say(small.sizing.boiler_kw, 'kW')} ({small.plan.name}) to "
-            f"{show.say(large.sizing.boiler_kw, 'kW')} ({large.plan.name}), margin included."
+            f"The boiler is {least} for every candidate, margin included."
+            if least == most
+            else f"The boiler ranges from {least} ({small.plan.name}) to {most} ({large.plan.name}), margin "
+            "included."
         )
     opening = [one.plan.name for one in run.candidates if peaks_as_screens_open(one)]
     if opening:

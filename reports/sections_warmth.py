@@ -55,7 +55,8 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     damp = max(rows, key=lambda r: r.total["heat_for_humidity_kwh_m2"])
     damp_kwh = damp.total["heat_for_humidity_kwh_m2"]
     if damp_kwh > 0.5:
-        most_of = "" if len(rows) == 1 else f" with {damp.name}, the most of all candidates"
+        least = min(r.total["heat_for_humidity_kwh_m2"] for r in rows)
+        most_of = f" with {damp.name}, the most of all candidates" if damp_kwh - least >= 0.5 else ""
         lines.append(f"Keeping the air dry by venting costs {show.say(damp_kwh, 'kWh/m2')} of heat{most_of}.")
     return tuple(lines)
 
@@ -81,13 +82,16 @@ def _flow_table(run: Run, rows: Sequence[Summary], show: Display) -> Table:
 def _saving_words(rows: Sequence[Summary], savings: Sequence[Saving], show: Display) -> str:
     at = int(np.argmax([s.heat for s in savings]))
     most, name = savings[at], rows[at + 1].name
+    if max(abs(s.heat) for s in savings) <= say.SAME * rows[0].heat_kwh:
+        return f"All candidates take the same heat as {rows[0].name}."
     if most.heat <= 0:
         return f"No candidate takes less heat than {rows[0].name}; the table says where the others lose more."
     parts = sorted(zip(most.paths, (title for title, _ in LOSS_PATHS), strict=True), reverse=True)[:2]
-    kept = say.listed([f"{show.say(kwh, 'kWh/m2')} less {title}" for kwh, title in parts if kwh > 0])
-    saved = show.say(most.heat, "kWh/m2")
+    kept = [f"{show.say(kwh, 'kWh/m2', 1)} less {title}" for kwh, title in parts if kwh > 0.05]
+    where = f"in the dark, {say.listed(kept)}" if kept else "all of it by day"
+    saved = show.say(most.heat, "kWh/m2", 1)
     return (
-        f"The most is saved by {name}, {saved} against {rows[0].name}; in the dark, {kept}. Leakage and the "
+        f"The most is saved by {name}, {saved} against {rows[0].name}; {where}. Leakage and the "
         "ground belong to the house; the other paths to the covering and its screens, as far as the house "
         "is the same."
     )

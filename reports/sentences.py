@@ -20,6 +20,8 @@ MONTHS: Final = (
 
 SAME: Final = 0.005  # differences below half a per cent are not told apart in words
 
+DARK: Final = "No sunlight falls in the reported season"
+
 KEY_WORDS: Final = {
     "house.form": "form",
     "house.spans": "spans",
@@ -71,7 +73,9 @@ def short_hour(at: np.datetime64) -> str:
 
 
 def listed(names: Sequence[str]) -> str:
-    """Return "a, b and c"."""
+    """Return "a, b and c"; "none" when there is nothing to list."""
+    if not names:
+        return "none"
     return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
 
 
@@ -83,6 +87,8 @@ def period(run: Run) -> str:
     if not (np.diff(run.days.astype(int)) == 1).all():
         gap = int(np.argmax(np.diff(run.days.astype(int))))
         return f"from {day_words(run.days[gap + 1])} to {day_words(run.days[gap])}"
+    if len(run.days) == 1:
+        return f"on {day_words(run.days[0])}"
     return f"from {day_words(run.days[0])} to {day_words(run.days[-1])}"
 
 
@@ -98,6 +104,8 @@ def dark_words(run: Run, short: bool = False) -> str:
 
 def change(new: float, old: float, what: str) -> str:
     """Return "12 % less heat", "3.1 % more heat" or "the same heat"."""
+    if old <= 0 and new <= 0:
+        return f"the same {what}"
     if old <= 0 or not np.isfinite(new / old):
         return f"{what} that cannot be compared"
     step = new / old - 1.0
@@ -111,18 +119,29 @@ def answer(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     span, base = period(run), rows[0]
     if len(rows) == 1:
         light = f"Light: {percent(base.light_share)} of the outside PAR reaches the top of the crop"
+        light = light if base.outside_mol > 0 else DARK
         peak = show.say(base.peak_w, "W/m2")
         if base.heat_kwh <= 0:
             return f"{light}.", "It takes no heat: temperatures float.", cold_words(rows, show)
         return f"{light}.", f"Heat: {show.say(base.heat_kwh, 'kWh/m2')} {span}, {peak} in the largest hour."
     cool = min(rows, key=lambda r: r.heat_kwh)
     bright = max(rows, key=lambda r: r.inside_mol)
-    if cool.heat_kwh <= 0:
+    most = max(r.heat_kwh for r in rows)
+    if most <= 0:
         lines = ["No candidate takes heat: temperatures float.", cold_words(rows, show)]
+    elif most - cool.heat_kwh <= SAME * most:
+        lines = [f"All candidates take the same heat: {show.say(cool.heat_kwh, 'kWh/m2')} {span}."]
     else:
         against = "" if cool is base else f", {change(cool.heat_kwh, base.heat_kwh, 'heat')} than {base.name}"
         lines = [f"Least heat: {cool.name}, {show.say(cool.heat_kwh, 'kWh/m2')} {span}{against}."]
-    also = " as well" if bright is cool else ""
+    if base.outside_mol <= 0:
+        return (*lines, f"{DARK}.")
+    dim = min(r.inside_mol for r in rows)
+    if bright.inside_mol - dim <= SAME * bright.inside_mol:
+        share = percent(bright.light_share)
+        said = f"{show.say(bright.inside_mol, 'mol/m2')} of PAR at the top of the crop {span}"
+        return (*lines, f"All candidates give the same light: {said}, {share} of what falls outside.")
+    also = " as well" if bright is cool and most > 0 else ""
     lines.append(
         f"Most light: {bright.name}{also}, {show.say(bright.inside_mol, 'mol/m2')} of PAR at the top of the "
         f"crop {span}, {percent(bright.light_share)} of what falls outside."
@@ -147,21 +166,35 @@ def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     """Return one sentence per further candidate: heat, light and peak against the first one."""
     base, lines = rows[0], []
     for one in rows[1:]:
-        dark = change(one.dark_inside_mol, base.dark_inside_mol, "light")
+        dark = f" ({change(one.dark_inside_mol, base.dark_inside_mol, 'light')} in {dark_words(run)})"
         text = (
-            f"Against {base.name}, {one.name} takes {change(one.heat_kwh, base.heat_kwh, 'heat')} and gives "
-            f"the crop {change(one.inside_mol, base.inside_mol, 'light')} ({dark} in {dark_words(run)}); the "
-            f"largest hour takes {show.say(one.peak_w, 'W/m2')} instead of {show.say(base.peak_w, 'W/m2')}."
+            f"Against {base.name}, {one.name} takes {_heat_change(one, base, show)} and gives the crop "
+            f"{change(one.inside_mol, base.inside_mol, 'light')}{'' if dark_months(run).all() else dark}"
         )
+        if max(one.peak_w, base.peak_w) > 0:
+            mine, theirs = show.say(one.peak_w, "W/m2"), show.say(base.peak_w, "W/m2")
+            more = "as well" if mine == theirs else f"instead of {theirs}"
+            text += f"; the largest hour takes {mine} {more}"
+        text += "."
         saved, lost = base.heat_kwh - one.heat_kwh, base.inside_mol - one.inside_mol
         if saved > SAME * base.heat_kwh and lost > SAME * base.inside_mol:
             text += f" For each mol of PAR given up it saves {show.say(saved / lost, 'kWh/mol')} of heat."
         if one.cost is not None and base.cost is not None:
             text += (
-                f" At the study's prices its fuel costs {money(one)} instead of {money(base)}, whole house."
+                f" At the study's prices its fuel costs {money(one)} instead of {money(base)}, whole house"
+                f"{'' if len(run.hours) == len(run.weather) else ' and whole weather record'}."
             )
         lines.append(text)
     return tuple(lines)
+
+
+def _heat_change(one: Summary, base: Summary, show: Display) -> str:
+    """Return "12 % less heat", or amounts where the first candidate takes none."""
+    if base.heat_kwh > 0:
+        return change(one.heat_kwh, base.heat_kwh, "heat")
+    if one.heat_kwh <= 0:
+        return "no heat either"
+    return f"{show.say(one.heat_kwh, 'kWh/m2')} of heat where {base.name} takes none"
 
 
 def money(one: Summary) -> str:

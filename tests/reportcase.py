@@ -328,11 +328,22 @@ def make_run(
     title: str = "Made-up study",
     months: tuple[int, ...] = tuple(range(1, 13)),
     lai: float = 3.0,
+    first_days: int | None = None,
+    dark: bool = False,
+    heated: bool = True,
 ) -> Run:
-    """Return a whole made-up run that reports some months of its year."""
+    """Return a whole made-up run that reports some months of its year.
+
+    `first_days`: only the first ones of these months; `dark`: no sunlight in them; not `heated`: none is delivered.
+    """
     fake = fakes(4) if fake is None else fake
     weather = make_weather()
-    hours = np.flatnonzero(np.isin(weather.time.astype("datetime64[M]").astype(int) % 12 + 1, months))
+    reported = np.isin(weather.time.astype("datetime64[M]").astype(int) % 12 + 1, months)
+    if dark:
+        lit = {name: getattr(weather, name) * ~reported for name in ("ghi", "dni", "dhi", "ghi_clear")}
+        weather = replace(weather, **lit)
+    hours = np.flatnonzero(reported)
+    hours = hours if first_days is None else hours[: 24 * first_days]
     time = weather.time[hours]
     study = make_study(fake, units, title)
     sun = SunBands(
@@ -346,6 +357,9 @@ def make_run(
         covering = make_covering(f)
         light = _light(weather, f)
         heat = _heat(weather, f, light, (f.layers, 8760))
+        if not heated:
+            none = np.zeros(len(weather))
+            heat = replace(heat, heat_delivered=none, heat_for_humidity=none)
         case = _case(weather, covering, light, sky, lai)
         night = make_night(1.1 * float(heat.heat_delivered.max()))
         whole = hourly_columns(weather, sun, light, case, heat)

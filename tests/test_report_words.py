@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import io
-from dataclasses import replace
+import re
+from collections.abc import Callable
+from dataclasses import fields, is_dataclass, replace
 from typing import cast
 
 import numpy as np
@@ -16,7 +18,7 @@ from canopy.ledger import by_group, groups, season
 from canopy.optics import Screen
 from canopy.run import Run
 from reports import sentences as say
-from reports.display import Display, number, percent
+from reports.display import NONE, Display, number, percent
 from reports.figures import (
     COLOURS,
     FAINT,
@@ -36,6 +38,7 @@ from reports.figures_climate import AIR_OUT, HUMID, INSIDE, MEAN
 from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
 from reports.nights import find_nights, night_pattern
+from reports.page import sections_of
 from reports.savings import LOSS_PATHS, saving
 from reports.season import in_order
 from reports.sections_size import peaks_as_screens_open
@@ -278,6 +281,71 @@ def test_a_saving_is_accounted_for_path_by_path(run: Run) -> None:
         expected = base.daily["heat_delivered_kwh_m2"].sum() - one.daily["heat_delivered_kwh_m2"].sum()
         assert found.heat == pytest.approx(expected, abs=1e-9)
     assert saving(run, base, base).paths == (0.0,) * len(LOSS_PATHS)
+
+
+def _texts(value: object) -> list[str]:
+    """Return every text of a section, however deep."""
+    if isinstance(value, str):
+        return [value]
+    if isinstance(value, tuple | list):
+        return [text for item in value for text in _texts(item)]
+    if is_dataclass(value) and not isinstance(value, type):
+        return [text for f in fields(value) for text in _texts(getattr(value, f.name))]
+    return []
+
+
+ALIKE = tuple(Fake(f"c{k}") for k in range(3))
+ODD: dict[str, Callable[[], Run]] = {
+    "all alike": lambda: make_run(ALIKE),
+    "one candidate": lambda: make_run(fakes(1)),
+    "24 candidates": lambda: make_run(fakes(24)),
+    "one day": lambda: make_run(fakes(3), months=(2,), first_days=1),
+    "one summer day": lambda: make_run(fakes(2), months=(7,), first_days=1),
+    "no heat": lambda: make_run(fakes(3), heated=False),
+    "no heat, one candidate": lambda: make_run(fakes(1), heated=False),
+    "no light": lambda: make_run(fakes(3), months=(1, 2), dark=True),
+    "no light, one candidate": lambda: make_run(fakes(1), months=(1,), dark=True),
+    "a covering that passes nothing": lambda: make_run((Fake("open"), Fake("board", par=0.0))),
+    "no crop": lambda: make_run(fakes(3), lai=0.0),
+    "us, all alike": lambda: make_run(ALIKE, units="us"),
+}
+
+
+@pytest.mark.parametrize("case", ODD)
+def test_odd_runs_are_told_in_whole_sentences(case: str) -> None:
+    texts = [text for section in sections_of(ODD[case]()) for text in _texts(section.blocks)]
+    assert len(texts) > 100
+    for text in texts:
+        words = re.findall(r"[A-Za-z]+", text)
+        assert not {"nan", "inf", "None", "NoneType"} & set(words), text
+        assert ", ." not in text
+        assert "  " not in text
+        if text.endswith("."):  # a sentence: no dash where a number should stand
+            assert f"{NONE} of" not in text, text
+            assert f"{NONE}." not in text, text
+
+
+def test_equal_candidates_are_called_equal() -> None:
+    run = make_run(ALIKE)
+    rows, show = summaries(run), Display("si")
+    assert all(line.startswith("All candidates") for line in say.answer(run, rows, show))
+    assert say.trades(run, rows, show)[0].startswith("Against c0, c1 takes the same heat and gives the crop ")
+    assert len(say.verdicts(rows)) == 1
+    texts = [text for section in sections_of(run) for text in _texts(section.blocks)]
+    assert "All candidates take the same heat as c0." in texts
+    assert say.listed([]) == "none"
+
+
+def test_a_heated_house_beside_an_unheated_one_is_not_called_unheated() -> None:
+    warm, cold = make_run(fakes(2)), make_run(fakes(2), heated=False)
+    for first, second, part in (
+        (warm, cold, "100\u202f% less heat"),
+        (cold, warm, "of heat where single glass takes none"),
+    ):
+        run = replace(warm, candidates=(first.candidates[0], second.candidates[1]))
+        rows = summaries(run)
+        assert say.answer(run, rows, Display("si"))[0].startswith("Least heat: ")
+        assert part in say.trades(run, rows, Display("si"))[0]
 
 
 def test_saving_paths_take_every_loss_and_store_once() -> None:

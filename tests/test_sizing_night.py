@@ -122,6 +122,38 @@ def test_components_add_up_and_screens_help() -> None:
     assert share == pytest.approx(found.design_w_m2 / found.open.total_w_m2)
 
 
+def test_a_night_that_takes_no_heat_is_said() -> None:
+    case = winter_case(screens=(energy_screen(),))
+    found = design_night(case, outside(case))
+    assert found is not None
+    idle = replace(found, open=replace(found.open, total_w_m2=0.0), hold_open_c=None)
+    idle = replace(idle, drawn=replace(found.open, total_w_m2=0.0, screens="drawn"))
+    hours = np.zeros(8760)
+    time = np.datetime64("1990-01-01T00", "s") + np.arange(8760) * np.timedelta64(3600, "s")
+    sized = size(hours, time, hours, 4800.0, idle, 15.0, False)
+    assert sized.basis == "none"
+    assert sized.explained[0] == "No simulated hour takes heat."
+    assert "screens open takes 0 W/m2." in " ".join(sized.explained)
+    assert "higher than" not in " ".join(sized.explained)
+
+
+def test_a_mild_place_has_no_design_heat() -> None:
+    """A set-point below the outside air: both states of the screen need nothing, and it is said."""
+    case = winter_case(screens=(energy_screen(),))
+    mild = replace(case, climate=replace(case.climate, heat_at=np.full_like(case.climate.heat_at, 2.0)))
+    sky = design_night(mild, replace(outside(case), temp_c=8.0))  # heat for a cold sky over mild air
+    assert sky is not None
+    assert sky.open.total_w_m2 > 0.0
+    assert sky.hold_open_c is None
+    found = design_night(mild, replace(outside(case), temp_c=25.0))
+    assert found is not None
+    assert found.open.total_w_m2 == 0.0
+    assert found.hold_open_c is None
+    hours = np.zeros(8760)
+    time = np.datetime64("1990-01-01T00", "s") + np.arange(8760) * np.timedelta64(3600, "s")
+    assert size(hours, time, hours + 8.0, 4800.0, found, 15.0, False).design_w_m2 == 0.0
+
+
 def test_design_night_is_steady_and_dry() -> None:
     case = winter_case(covering=twin_film())
     row = 0

@@ -80,32 +80,48 @@ def test_spectrum_in_percent_and_nanometres(tmp_path: Path) -> None:
     wave, reflect, transmit = build_leaves.spectrum(recipe)
     lines = [f"{w},{100 * r},{100 * t}" for w, r, t in zip(wave, reflect, transmit, strict=True)]
     body = "wavelength (nm),reflectance (%),transmittance (%)\n" + "\n".join(lines)
-    own, shipped = leaf_from_csv(_write(tmp_path / "own.csv", body)), leaf("tomato")
+    (own, notes), shipped = leaf_from_csv(_write(tmp_path / "own.csv", body)), leaf("tomato")
+    assert notes == ("leaf spectrum values read as percent",)
     assert own.reflect == pytest.approx(shipped.reflect, abs=2e-4)
     assert own.transmit == pytest.approx(shipped.transmit, abs=2e-4)
 
 
-GOOD = "wavelength,reflectance,transmittance\n0.4,.1,.1\n0.7,.1,.1\n2.4,.3,.2\n"
+GOOD = "wavelength,reflectance,transmittance\n0.4,.1,.1\n0.7,.1,.1\n" + "".join(
+    f"{w},.3,.2\n" for w in (0.8, 1.0, 1.2, 1.5, 1.8, 2.1, 2.4)
+)
 
 
 @pytest.mark.parametrize(
     ("body", "words"),
     [
         ("", "empty"),
-        ("wavelength,reflectance\n.4,.1\n", "row 1: 0 columns named transmittance"),
-        (GOOD.replace("0.7,.1,.1", "0.7,x,.1"), 'row 3: reflectance is "x"'),
-        (GOOD.replace("0.7,.1,.1", "0.7,.9,.2"), "row 3: reflectance 0.9, transmittance 0.2"),
-        (GOOD.replace("0.7,.1,.1", "0.3,.1,.1"), "row 3: wavelengths must rise"),
-        (GOOD.replace("0.7,.1,.1", "0.7,.1"), "row 3: transmittance"),
-        (GOOD.replace("2.4", "1.1"), "it must cover"),
-        (GOOD.replace("2.4", "nan"), "row 4: wavelength"),
-        ("wavelength,reflectance,transmittance\n", "no rows"),
+        ("wavelength,reflectance\n.4,.1\n", "header: wavelength and transmittance are needed"),
+        ("wavelength,transmittance\n" + "".join(f"{w / 10},.1\n" for w in range(4, 24)), "needs reflectance"),
+        (GOOD.replace("0.7,.1,.1", "0.7,x,.1"), 'row 3: "x" is not a number'),
+        (GOOD.replace("0.7,.1,.1", "0.7,.9,.2"), "row 3: found 1.1; transmittance"),
+        (GOOD.replace("0.7,.1,.1", "0.7,-.1,.2"), "row 3: found -0.1; reflectance below"),
+        (GOOD.replace("0.7,.1,.1", "0.3,.1,.1"), "row 3: found 0.3; wavelength does not rise"),
+        (GOOD.replace("0.7,.1,.1", "0.7,.1"), "row 3: 2 cells"),
+        (GOOD.replace("2.4", "2.2"), "0.4-2.3 is needed"),
+        (GOOD.replace("2.4", "nan"), 'row 10: "nan" is not a number'),
+        ("wavelength,reflectance,transmittance\n", "0 rows"),
     ],
 )
 def test_bad_spectra_name_row_and_reason(tmp_path: Path, body: str, words: str) -> None:
     with pytest.raises(UserError, match=words.replace("(", r"\(")) as caught:
         leaf_from_csv(_write(tmp_path / "bad.csv", body))
     assert "bad.csv" in str(caught.value)
+
+
+def test_noise_is_clipped_and_said(tmp_path: Path) -> None:
+    body = GOOD.replace("0.4,.1,.1", "0.4,.1,-.003").replace("1.0,.3,.2", "1.0,.805,.2")
+    clean = GOOD.replace("0.4,.1,.1", "0.4,.1,0").replace("1.0,.3,.2", "1.0,.8,.2")
+    made, notes = leaf_from_csv(_write(tmp_path / "noisy.csv", body))
+    assert sum("(noise)" in note for note in notes) == 2
+    assert all(note.startswith("leaf spectrum ") for note in notes)
+    expected, _ = leaf_from_csv(_write(tmp_path / "clean.csv", clean))
+    np.testing.assert_allclose(made.reflect, expected.reflect)
+    np.testing.assert_allclose(made.transmit, expected.transmit)
 
 
 def test_missing_and_binary_spectra(tmp_path: Path) -> None:

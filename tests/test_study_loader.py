@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 
+from canopy.plans import make_house
 from canopy.studyfile import Study, load_study
 from reports.check_view import check_text
 from reports.studyfiles import study_text
@@ -218,6 +219,18 @@ def test_check_reads_the_spectra(tmp_path: Path, case: str) -> None:
     (tmp_path / "x.csv").write_text(f"wavelength_nm,reflectance,transmittance\n{rows}", encoding="utf-8")
     lab = f'{ONE}[[covering]]\nname = "own"\n{keys}\n[[candidate]]\nname = "a"\ncovering = "own"\n'
     assert part in _refused(tmp_path, lab if case == "covering" else _own(keys))
+
+
+def test_a_tunnel_from_the_ground_may_hold_a_crop(tmp_path: Path) -> None:
+    arch = 'house = { form = "arch", rise = 3.0, gutter_height = 0.0, gutter_width = 0.0 }\ncrop.height = '
+    study = _load(tmp_path, _own(f"{arch}2.0"))
+    assert make_house(study.plans[0]).crop_plane_height == 0.0
+    said = check_text(tmp_path / "study.toml")
+    assert "light is taken at gutter height, 0 m" in said
+    assert "the crop's height = 3.5 m" in _refused(tmp_path, _own(f"{arch}3.5"))
+    low = 'house = { form = "arch", rise = 2.0, gutter_height = 2.0, gutter_depth = 0.25 }\ncrop.height = '
+    assert make_house(_load(tmp_path, _own(f"{low}1.5")).plans[0]).crop_plane_height == 1.5
+    assert make_house(_load(tmp_path, _own(f"{low}2.5")).plans[0]).crop_plane_height == 1.75
 
 
 PLACES = {

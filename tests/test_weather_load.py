@@ -58,3 +58,30 @@ def test_sun_is_pvlibs_at_mid_hour(greensboro: Weather) -> None:
 def test_unknown_shipped_year_names_the_nearest() -> None:
     with pytest.raises(UserError, match=r'did you mean "greensboro"'):
         load_weather(WeatherRequest(shipped="greensborro"))
+
+
+def _at(latitude: float, longitude: float, zone: str) -> WeatherRequest:
+    return WeatherRequest(shipped="greensboro", latitude=latitude, longitude=longitude, timezone=zone)
+
+
+@pytest.mark.parametrize(
+    ("latitude", "longitude", "zone"),
+    [
+        (52.0, 5.3, "Europe/Amsterdam"),
+        (-36.1, -79.95, "America/New_York"),
+        (38.2, -79.95, "America/New_York"),
+        (36.1, -76.9, "America/New_York"),
+    ],
+)
+def test_weather_from_elsewhere_is_refused(latitude: float, longitude: float, zone: str) -> None:
+    with pytest.raises(UserError, match="degrees of latitude and 3 of longitude") as caught:
+        load_weather(_at(latitude, longitude, zone))
+    assert f"{latitude:g}, {longitude:g}" in str(caught.value)
+    assert "36.1, -79.95" in str(caught.value)
+
+
+def test_weather_from_nearby_is_warned_of() -> None:
+    weather = load_weather(_at(37.5, -78.0, "America/New_York"))
+    (found,) = [f for f in weather.findings if f.check == "site"]
+    assert found.level == "warning"
+    assert "(36.10, -79.95)" in found.text

@@ -28,6 +28,7 @@ from weather.sky import (
 from weather.sun import Sun, extraterrestrial_normal, sun_positions
 
 FAR_DEG = 0.5  # beyond this the file's place is another place than the study's
+REFUSED_NORTH_DEG, REFUSED_EAST_DEG = 2.0, 3.0  # beyond this it has another climate and another sun
 
 
 @dataclass(frozen=True)
@@ -67,6 +68,7 @@ def settle_place(request: WeatherRequest, raw: RawWeather) -> Place:
         near = None in given or _far(latitude, longitude, raw) <= FAR_DEG
         elevation = raw.elevation if near and raw.elevation is not None else None
     site = make_site(latitude, longitude, elevation, zone)
+    _refuse_elsewhere(latitude, longitude, raw)
     distance = _far(latitude, longitude, raw)
     if distance > FAR_DEG and raw.latitude is not None and raw.longitude is not None:
         text = (
@@ -79,6 +81,20 @@ def settle_place(request: WeatherRequest, raw: RawWeather) -> Place:
     if raw.latitude is not None and raw.longitude is not None and raw.utc_offset_h:
         check_coordinates(raw.latitude, raw.longitude, raw.utc_offset_h)
     return Place(site, latitude, longitude, offset, clock, tuple(findings))
+
+
+def _refuse_elsewhere(latitude: float, longitude: float, raw: RawWeather) -> None:
+    """Refuse a file that was measured under another sky; a record without a place passes."""
+    if raw.latitude is None or raw.longitude is None:
+        return
+    north = abs(latitude - raw.latitude)
+    east = abs((longitude - raw.longitude + 180.0) % 360.0 - 180.0)
+    if north > REFUSED_NORTH_DEG or east > REFUSED_EAST_DEG:
+        raise UserError(
+            f"site: the study stands at {latitude:g}, {longitude:g}, {raw.source} at {raw.latitude:g}, "
+            f"{raw.longitude:g}; at most {REFUSED_NORTH_DEG:g} degrees of latitude and {REFUSED_EAST_DEG:g} "
+            "of longitude apart (leave latitude and longitude out to take the file's place)"
+        )
 
 
 def _far(latitude: float, longitude: float, raw: RawWeather) -> float:
