@@ -15,10 +15,11 @@ from canopy.heatindex import order_index
 from canopy.heatmodel import Model, build_model
 from canopy.heatout import result
 from canopy.heatregime import evaluate
-from canopy.heatretry import alone
+from canopy.heatretry import alone, descend
 from canopy.heatrows import Context, State, past, soil_line
 from canopy.heatstep import Stepper, open_by, set_soil
 from canopy.longwave import band_emission
+from canopy.march import run_film
 from canopy.optics import ThermalOptics
 from weather.errors import OpenHourError
 
@@ -28,7 +29,7 @@ CLOSED_W_M2: Final = 2e-5  # every row of every hour
 FILM_LAPS: Final = 60  # a film that gains 1 g/m2 a day fills in as many
 ENOUGH_W_M2: Final = 1e-2  # left after all turns: one day that repeats itself closes slowly
 LET_GO_HUMIDITY: Final = 2
-LET_GO_VENTS: Final = 4
+HOLD_OPENING: Final = 3
 OPEN_W_M2: Final = 1e-3  # what sends an hour to the other route
 TURNS: Final = 8  # of Newton passes and other route
 FIRST_PASSES: Final = 16
@@ -94,7 +95,8 @@ def _other_route(model: Model, state: State, turn: int) -> int:
 
     An hour that no regime closes is one whose opening does not bring about what it is opened for (a screen
     that lets warmth out faster than damp, a space above colder than outside). After some turns such an hour
-    is taken without its humidity limit, later with its vents open if nothing is heated: `notes` say so.
+    is taken without its humidity limit, later with its opening held where the control changes its mind:
+    `notes` say so.
     """
     gone = past(model, state)
     error = open_by(model, state.film, evaluate(model, state.unknown, gone))
@@ -102,12 +104,14 @@ def _other_route(model: Model, state: State, turn: int) -> int:
     if len(at) == 0:
         return 0
     part, before = model.take(at), gone.take(at)
-    unknown, done = alone(part, [u[at] for u in state.unknown], before, 0.1 * CLOSED_W_M2)
+    unknown, done, opening = alone(part, [u[at] for u in state.unknown], before, 0.1 * CLOSED_W_M2)
     if turn >= LET_GO_HUMIDITY:
         model.dry_outside[at[~done]] = False
         model.let_go[at[~done]] = True
-    if turn >= LET_GO_VENTS:
-        model.open_all[at[~done]] |= (unknown[model.index.house_air] > part.heat_at + 0.1)[~done]
+    if turn >= HOLD_OPENING and not done.all():
+        model.hold[at[~done]] = opening[~done]
+        part = model.take(at)
+        unknown, done = descend(part, unknown, before, 0.1 * CLOSED_W_M2)
     context = evaluate(part, unknown, before)
     for k, value in enumerate(unknown):
         state.unknown[k][at] = value
@@ -125,22 +129,9 @@ def _run_film(model: Model, state: State, part: Context, at: NDArray[np.int64]) 
     Newton passes hand the film on by one chunk each; a film that gains a little every day would take as many
     passes as days to fill.
     """
-    order = model.order
     inflow = evaluate(model, state.unknown, past(model, state)).inflow
     inflow[at] = part.inflow
-    cut = inflow.reshape(order.steps, order.chunks)
-    film = state.film.reshape(order.steps, order.chunks).copy()
-    for _ in range(FILM_LAPS):
-        end = film[-1].copy()
-        now = np.roll(end, 1)
-        if not model.case.periodic:
-            now[0] = 0.0
-        for k in range(order.steps):
-            now = vp.film_step(now, cut[k])[0]
-            film[k] = now
-        if float(np.abs(film[-1] - end).max()) < 1e-12:
-            break
-    state.film = film.ravel()
+    state.film = run_film(model, state.film, inflow, FILM_LAPS)
 
 
 def _why(model: Model, c: Context, error: Floats, hour: int, passes: int) -> str:

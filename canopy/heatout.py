@@ -147,4 +147,7 @@ def _notes(model: Model) -> tuple[str, ...]:
     if model.let_go.any():
         count = int(model.let_go.sum())
         notes.append(f"{count} hours: opening would not have lowered the humidity; limit let go.")
+    if np.isfinite(model.hold).any():
+        count = int(np.isfinite(model.hold).sum())
+        notes.append(f"{count} hours: no opening of the vents satisfies their control; held between two.")
     return tuple(notes)

@@ -225,16 +225,13 @@ def vent_row(c: Context) -> None:
     system.add_slope(row, ix.house_air, by_air + np.where(by_dry, rise, 0.0))
     system.add_slope(row, ix.air0_vapour, np.where(by_dry, -VAPOUR_WEIGHT, 0.0))
     c.humid = by_dry | by_stop | by_give
-    c.turn = np.where(by_cool, -np.sign(cool), np.where(by_dry, -np.sign(dry), 0.0))
 
 
-def vent_reach(c: Context, firm: bool = False) -> tuple[Floats, Floats, Floats]:
-    """How far the opening may move in one step, down and up to just past its row's next kink, and which way.
+def vent_reach(c: Context) -> tuple[Floats, Floats]:
+    """How far the opening may move in one step, down and up to just past its row's next kink.
 
     Kinks are shut, the end of the screen gap, the limit for humidity and fully open. Stopping there, before
-    the other unknowns are solved, keeps a step from settling them for a regime that does not hold. If `firm`,
-    a house too warm or too humid opens and one too cool closes, whatever the slope at hand says (opening can
-    raise the relative humidity before it lowers it).
+    the other unknowns are solved, keeps a step from settling them for a regime that does not hold.
     """
     model, opening = c.model, c.u[c.ix.vent]
     most = model.gap_max + model.vent_max
@@ -243,4 +240,4 @@ def vent_reach(c: Context, firm: bool = False) -> tuple[Floats, Floats, Floats]:
     for kink in (0.0 * most, model.gap_max, humid, most):
         low = np.where(opening > kink + 1.01 * PAST_KINK, np.maximum(low, kink - PAST_KINK), low)
         high = np.where(opening < kink - 1.01 * PAST_KINK, np.minimum(high, kink + PAST_KINK), high)
-    return low - opening, high - opening, c.turn if firm else 0.0 * most
+    return low - opening, high - opening

@@ -1,8 +1,8 @@
 """The other route for hours that Newton steps of the whole record leave open.
 
 Each such hour is solved by itself with the hour before held: a few whole steps, then damped ones that must
-lower the open amount, and where these stall, fresh starts from each regime (shut, part open, open; heating
-off or at its limit). What no start closes has its opening bracketed. Hours that are done are left out.
+lower the open amount, and where these stall, the opening is bracketed: for any opening held, the balance has
+its answer. Hours that are done are left out.
 """
 
 from __future__ import annotations
@@ -12,7 +12,6 @@ from typing import Final
 import numpy as np
 from numpy.typing import NDArray
 
-from canopy import vapour as vp
 from canopy.heatindex import Index
 from canopy.heatmodel import Model
 from canopy.heatregime import PAST_KINK, evaluate, vent_reach
@@ -27,40 +26,58 @@ WHOLE_STEPS: Final = 5  # tries whose step is taken whole; later ones must lower
 GIVEN_UP: Final = 1e-3  # share of a step below which an hour is left as it is
 SMALLER: Final = 0.35  # what a step that does not help is cut to
 CUT_AT: Final = 0.75  # share of hours still open below which the others are left out
-BISECTIONS: Final = 12
-STARTS: Final = ((0.0, -3.0), (0.0, -3.0), (0.03, 0.0), (1.0, -3.0), (1.0, 3.0), (0.0, 3.0))
-"""Openings to start from, and covering less air temperature, K; every other one with a firm turn."""
+BRACKET_W_M2: Final = 1e-3
+GRID: Final = np.linspace(0.0, 1.0, 13)
+BRACKETS: Final = 3  # each divides the bracket by 12
 
 
-def alone(model: Model, unknown: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Bools]:
-    """Solve hours by themselves, their past held; returns the unknowns and where they are closed."""
+def alone(
+    model: Model, unknown: list[Floats], gone: Past, closed: float
+) -> tuple[list[Floats], Bools, Floats]:
+    """Solve hours by themselves, their past held.
+
+    Returns the unknowns, where they are closed, and the opening to hold where they are not.
+    """
     best, done = descend(model, [u.copy() for u in unknown], gone, closed)
-    for number, (opening, cover) in enumerate(STARTS):
-        if done.all():
-            break
-        at = np.flatnonzero(~done)
+    opening = best[model.index.vent].copy()
+    at = np.flatnonzero(~done)
+    if len(at):
         part, before = model.take(at), gone.take(at)
-        trial, ok = descend(part, _fresh(part, before, opening, cover), before, closed, number % 2 == 1)
+        start, opening[at] = bracketed(part, [u[at] for u in unknown], before)
+        trial, ok = descend(part, start, before, closed)
         for k in range(len(best)):
             best[k][at[ok]] = trial[k][ok]
         done[at[ok]] = True
-    return best, done
+    return best, done, opening
 
 
-def _fresh(model: Model, gone: Past, opening: float, cover: float) -> list[Floats]:
-    """A start near the hour before, with a given opening and covering less air temperature."""
-    ix = model.index
-    u = [np.zeros(model.hours) for _ in range(ix.size)]
-    for k, value in gone.before.items():
-        u[k] = value.copy()
-    u[ix.floor] = u[ix.house_air].copy()
-    for layer in range(ix.layers):
-        u[ix.cover(layer)] = u[ix.house_air] + cover
-    for space in range(1, ix.screens + 1):
-        u[ix.air(space)] = 0.5 * (u[ix.house_air] + model.temp_out)
-        u[ix.vapour(space)] = 0.8 * vp.saturation(u[ix.air(space)])[0]
-    u[ix.vent] = opening * (model.gap_max + model.vent_max)
-    return u
+def bracketed(model: Model, unknown: list[Floats], gone: Past) -> tuple[list[Floats], Floats]:
+    """The opening of each hour between too little and too much: unknowns at its lower end, and its middle.
+
+    With the opening held, an hour's balance always has its answer, and the venting row says which way to go.
+    A grid of openings is solved at once, then one inside the pair where the row changes its sign, and so on.
+    """
+    ix, n, points = model.index, model.hours, len(GRID)
+    most = model.gap_max + model.vent_max
+    low, high = np.zeros(n), most.copy()
+    many = np.repeat(np.arange(n), points)
+    grid, before = model.take(many), gone.take(many)
+    u, best = [value[many] for value in unknown], unknown
+    for number in range(BRACKETS):
+        spread = GRID**2 if number == 0 else GRID  # small openings matter more
+        openings = (low[:, None] + (high - low)[:, None] * spread).ravel()
+        u[ix.vent] = openings.copy()
+        grid.hold[:] = openings
+        u, _ = descend(grid, u, before, BRACKET_W_M2)
+        grid.hold[:] = np.nan
+        row = -evaluate(grid, u, before).system.residual[ix.vent].reshape(n, points)
+        above = row[:, 1:] >= 0.0
+        pick = np.where(above.any(axis=1), np.argmax(above, axis=1), points - 2)
+        first = np.arange(n) * points + pick
+        best, low, high = [value[first] for value in u], openings[first], openings[first + 1]
+        u = [np.repeat(value, points) for value in best]
+    best[ix.vent] = low
+    return best, np.minimum(0.5 * (low + high), most)
 
 
 def opened(c: Context) -> Floats:
@@ -86,7 +103,7 @@ class _Pool:
         self.u, self.step = [v[at] for v in self.u], [v[at] for v in self.step]
         self.error, self.share = self.error[at], self.share[at]
 
-    def move(self, whole: bool, firm: bool, closed: float) -> None:
+    def move(self, whole: bool, closed: float) -> None:
         """One step; where it does not lower the open amount it is taken back and shortened."""
         ix = self.model.index
         first = bool(np.isinf(self.error).all())
@@ -97,7 +114,7 @@ class _Pool:
         error = opened(context)
         sides: list[list[Entry]] = [[r.copy()] for r in context.system.residual]
         slopes = [row[: ix.size] for row in context.system.slope]
-        x = eliminate(slopes, sides, vent_reach(context, firm), self.model.hours)
+        x = eliminate(slopes, sides, vent_reach(context), self.model.hours)
         steps = [np.zeros(self.model.hours) if row[0] is None else row[0] for row in x]
         size = _excess(ix, steps)
         if first or whole:
@@ -121,13 +138,13 @@ def _excess(ix: Index, steps: list[Floats]) -> Floats:
 
 
 def descend(
-    model: Model, u: list[Floats], gone: Past, closed: float, firm: bool = False, tries: int = TRIES
+    model: Model, u: list[Floats], gone: Past, closed: float, tries: int = TRIES
 ) -> tuple[list[Floats], Bools]:
     """Newton steps of every hour by itself: whole ones first, then such as lower the open amount."""
     best, left = [v.copy() for v in u], np.full(model.hours, np.inf)
     pool = _Pool(model, u, gone)
     for number in range(tries):
-        pool.move(number < WHOLE_STEPS, firm, closed)
+        pool.move(number < WHOLE_STEPS, closed)
         going = (pool.error >= closed) & (pool.share > GIVEN_UP)
         if going.sum() > CUT_AT * len(going) and number < tries - 1:
             continue
@@ -148,28 +165,3 @@ def _held(model: Model, k: int, value: Floats) -> Floats:
     if k == ix.air0_vapour or k < ix.screens:
         return np.clip(value, 1.0, 9000.0)
     return np.clip(value, -80.0, 110.0)
-
-
-def bracketed(model: Model, u: list[Floats], gone: Past, closed: float) -> tuple[list[Floats], Floats, Bools]:
-    """The last resort: the opening between too little and too much, halved again and again.
-
-    With the opening held, an hour's balance always has its answer; the venting row says which way to go. What
-    is left when the bracket has shut is the opening at which the control changes its mind. Returns unknowns,
-    the opening that was held, and where the balance closed. `model` is a part of its own (`Model.take`): its
-    `hold` is written.
-    """
-    ix = model.index
-    low, high = np.zeros(model.hours), model.gap_max + model.vent_max
-    best, done = u, np.zeros(model.hours, dtype=bool)
-    middle = 0.5 * (low + high)
-    for _ in range(BISECTIONS):
-        middle = 0.5 * (low + high)
-        model.hold[:] = middle
-        start = [value.copy() for value in best]
-        start[ix.vent] = middle.copy()
-        best, done = descend(model, start, gone, closed)
-        model.hold[:] = np.nan
-        wants = -evaluate(model, best, gone).system.residual[ix.vent]
-        low, high = np.where(wants < 0.0, middle, low), np.where(wants < 0.0, high, middle)
-    model.hold[:] = middle
-    return best, middle, done

@@ -79,7 +79,7 @@ class Context:
         self.film_slopes = (np.empty(0), np.empty(0))
         self.inflow_slopes: list[tuple[int, Floats]] = []
         self.speed_slopes: list[tuple[int, Floats]] = []
-        self.pipe_keeps = self.turn = np.empty(0)
+        self.pipe_keeps = np.empty(0)
         self.at_limit = self.humid = np.empty(0, dtype=bool)
         opening = unknown[ix.vent]
         some = model.gap_max > 0.0

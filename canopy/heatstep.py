@@ -15,15 +15,18 @@ from numpy.typing import NDArray
 from canopy import vapour as vp
 from canopy.heatmodel import Model
 from canopy.heatregime import PAST_KINK, evaluate, vent_reach
-from canopy.heatretry import descend
+from canopy.heatretry import alone, descend
 from canopy.heatrows import FILM, HISTORY, SPEED, Context, Past, State, past, soil_line
-from canopy.march import Response, march, run_modes
+from canopy.march import Response, march, run_film, run_modes
 from canopy.newton import Entry, eliminate
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
+FILM_LAPS: Final = 2  # of the film through the record in each pass
 FAR_W_M2: Final = 0.3  # an hour that is open by more is first solved by itself, if there are not too many
+FAR_FEW_W_M2: Final = 0.02  # the same when few hours still move
+FAR_FEW: Final = 50  # hours that may use every start of the other route
 FAR_SHARE: Final = 0.4
 NEAR_W_M2: Final = 1e-3
 FAR_TRIES: Final = 12
@@ -69,8 +72,10 @@ def right_sides(model: Model, c: Context, alone: bool) -> list[list[Entry]]:
     return sides
 
 
-def film_line(model: Model, film: Floats, c: Context, x: list[list[Entry]]) -> list[Floats]:
-    """The film's own row after elimination, for every right-hand side."""
+def film_line(
+    model: Model, film: Floats, c: Context, x: list[list[Entry]]
+) -> tuple[list[Floats], list[Floats]]:
+    """The film's own row after elimination, and that of its inflow, for every right-hand side."""
     by_before, by_inflow = c.film_slopes
     totals: dict[int, Floats] = {}
     for column, slope in c.inflow_slopes:
@@ -79,18 +84,19 @@ def film_line(model: Model, film: Floats, c: Context, x: list[list[Entry]]) -> l
             parts = [(k, slope * s) for k, s in c.speed_slopes]
         for k, value in parts:
             totals[k] = totals[k] + value if k in totals else value
-    out = []
+    inflow = []
     for column in range(len(x[0])):
         value = np.zeros(model.hours)
         for k, slope in totals.items():
             entry = x[k][column]
             if entry is not None:
                 value += slope * entry
-        out.append(by_inflow * value)
+        inflow.append(value)
+    out = [by_inflow * value for value in inflow]
     out[0] += c.film_after - film
     if len(out) > 1:
         out[-1] += by_before
-    return out
+    return out, inflow
 
 
 class Stepper:
@@ -100,8 +106,11 @@ class Stepper:
         """Keep room for the answers of every hour."""
         ix = model.index
         self.model, self.state = model, state
-        self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns
-        self.answer = np.zeros((ix.size + 1, len(self.carried) + 2, model.hours))
+        self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns, its inflow last
+        rest = [row for row in range(ix.size) if row not in (*self.carried, ix.floor)]
+        self.rows = [*self.carried, ix.floor, *rest, ix.size + 1]  # in this order answers are kept
+        self.answer = np.zeros((len(self.rows), len(self.carried) + 2, model.hours))
+        self.inflow = np.zeros(model.hours)
         self.active: Ints | None = None  # None: all hours
         self.given = np.zeros(model.hours)  # see `Response.given`
 
@@ -116,36 +125,43 @@ class Stepper:
         m, ix = self.model, self.model.index
         slopes = [row[: c.n] for row in c.system.slope]
         x = eliminate(slopes, right_sides(m, c, True), vent_reach(c), m.hours)
-        film = film_line(m, self.state.film, c, x)[0]
+        film, inflow = film_line(m, self.state.film, c, x)
+        self.inflow = c.inflow
         steps = [np.zeros(m.hours) if row[0] is None else row[0] for row in x]
         conductance, _ = soil_line(c)
-        self._apply([*steps, film], (1.0 + conductance / m.soil.film) * steps[ix.floor])
+        self._apply([*steps, film[0], inflow[0]], (1.0 + conductance / m.soil.film) * steps[ix.floor])
 
     def _learn(self, model: Model, film: Floats, c: Context, at: Ints | slice) -> None:
         """Keep the answers of the hours that were evaluated."""
         slopes = [row[: c.n] for row in c.system.slope]
         x = eliminate(slopes, right_sides(model, c, False), vent_reach(c), model.hours)
-        x.append(list(film_line(model, film, c, x)))
-        for k, row in enumerate(x):
-            for j, entry in enumerate(row):
-                self.answer[k, j, at] = 0.0 if entry is None else entry
+        for line in film_line(model, film, c, x):
+            x.append(list(line))
+        self.inflow[at] = c.inflow
+        for place, row in enumerate(self.rows):
+            for j, entry in enumerate(x[row]):
+                self.answer[place, j, at] = 0.0 if entry is None else entry
 
     def step(self, c: Context, error: Floats, gone: Past) -> None:
-        """One marched step from a full evaluation; hours far from closed are first brought near by themselves.
+        """One marched step from a full evaluation; hours far from closed first move by themselves.
 
         An hour that changes its regime would otherwise do so one kink a pass, and shake the hours after it.
         """
         self._learn(self.model, self.state.film, c, slice(None))
         far = np.flatnonzero(error > FAR_W_M2)
         if 0 < len(far) < FAR_SHARE * self.model.hours:
-            self._settle_far(far, gone, error)
+            self._settle_far(far, gone, error, len(far) < FAR_FEW)
         self._march(error)
 
-    def _settle_far(self, far: Ints, gone: Past, error: Floats) -> None:
+    def _settle_far(self, far: Ints, gone: Past, error: Floats, every_start: bool = False) -> None:
         """Solve far hours with their past held, then learn anew from them and the hours after them."""
         m, s = self.model, self.state
         part, before = m.take(far), gone.take(far)
-        unknown, done = descend(part, [u[far] for u in s.unknown], before, NEAR_W_M2, tries=FAR_TRIES)
+        start = [u[far] for u in s.unknown]
+        if every_start:
+            unknown, done, _ = alone(part, start, before, NEAR_W_M2)
+        else:
+            unknown, done = descend(part, start, before, NEAR_W_M2, tries=FAR_TRIES)
         if not done.any():
             return
         at = far[done]
@@ -171,20 +187,22 @@ class Stepper:
         at = self.active
         if at is None:
             raise ValueError("a full step comes first")
-        gone = past(self.model, self.state).take(at)
+        gone = past(self.model, self.state)
         part = self.model.take(at)
-        context = evaluate(part, [u[at] for u in self.state.unknown], gone)
+        context = evaluate(part, [u[at] for u in self.state.unknown], gone.take(at))
         film = self.state.film[at]
         self.answer[:, 0, :] = 0.0
         self._learn(part, film, context, at)
         error = np.zeros(self.model.hours)
         error[at] = open_by(part, film, context)
+        far = np.flatnonzero(error > FAR_FEW_W_M2)
+        if 0 < len(far) < FAR_SHARE * len(at):
+            self._settle_far(far, gone, error)
         self._march(error)
 
     def _march(self, error: Floats) -> None:
         m, ix = self.model, self.model.index
-        rows = [*self.carried, ix.floor]
-        picked = self.answer[rows]
+        picked = self.answer[: len(self.carried) + 1]
         start, soil = m.soil_start, m.soil
         conductance = soil.conductance - start * float(np.sum(soil.recall * soil.drive / (1.0 - soil.keep)))
         response = Response(
@@ -195,12 +213,12 @@ class Stepper:
         self.given = np.zeros(m.hours)
         carried, recalled, drive = march(m, response)
         shifted = m.order.before(carried) * (1.0 - start)
-        steps: list[Floats] = [carried[0]] * (ix.size + 1)
-        for place, row in enumerate(self.carried):
-            steps[row] = carried[place]
-        for row in range(ix.size):
-            if row not in self.carried:
-                a = self.answer[row]
+        steps: list[Floats] = [carried[0]] * (ix.size + 2)
+        for place, row in enumerate(self.rows):
+            if place < len(self.carried):
+                steps[row] = carried[place]
+            else:
+                a = self.answer[place]
                 steps[row] = a[0] + a[1] * recalled + np.einsum("kn,kn->n", a[2:], shifted)
         moved = self._apply(steps, drive)
         moving = (np.maximum(moved, m.order.before(moved)) > STILL_K) | (error > STILL_K)
@@ -210,7 +228,7 @@ class Stepper:
         """Limit and add a step; returns how far each hour moved, in K."""
         m, ix, s = self.model, self.model.index, self.state
         vapours = {ix.vapour(space) for space in range(ix.screens + 1)}
-        size, moved = np.ones(m.hours), np.abs(steps[ix.size]) / FILM_PER_K
+        size, moved = np.ones(m.hours), np.zeros(m.hours)
         for k in range(ix.size):
             step = np.abs(steps[k])
             if k == ix.vent:
@@ -221,7 +239,10 @@ class Stepper:
         share = 1.0 / size
         for k in range(ix.size):
             s.unknown[k] = s.unknown[k] + share * steps[k]
-        s.film = np.clip(s.film + share * steps[ix.size], 0.0, vp.FILM_MAX_KG_M2)
+        self.inflow = self.inflow + share * steps[ix.size + 1]
+        film = run_film(m, s.film, self.inflow, FILM_LAPS)
+        np.maximum(moved, np.abs(film - s.film) / FILM_PER_K, out=moved)
+        s.film = film
         s.drive = s.drive + np.clip(share * drive, -LARGEST_STEP_K, LARGEST_STEP_K)
         keep_in_range(m, s, vapours)
         return moved

@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from canopy.heatmodel import Model
+from canopy.vapour import FILM_FULL_KG_M2, FILM_MAX_KG_M2
 
 Floats = NDArray[np.float64]
 
@@ -25,9 +26,9 @@ def run_modes(model: Model, drive: Floats) -> Floats:
     soil, order = model.soil, model.order
     steps, chunks = order.steps, order.chunks
     keep, push = _first_step(model)
-    forcing = (
-        soil.drive[:, None] * drive + soil.deep[:, None] * model.deep
-    ).reshape(len(soil.keep), steps, chunks)
+    forcing = (soil.drive[:, None] * drive + soil.deep[:, None] * model.deep).reshape(
+        len(soil.keep), steps, chunks
+    )
     if not model.case.periodic:
         forcing[:, 0, 0] *= push[:, 0] / soil.drive
     out = np.empty_like(forcing)
@@ -44,6 +45,29 @@ def run_modes(model: Model, drive: Floats) -> Floats:
     out += power[:, :, None] * starts[:, None, :]
     del keep
     return out.reshape(len(soil.keep), -1)
+
+
+def run_film(model: Model, film: Floats, inflow: Floats, laps: int) -> Floats:
+    """Let the film run through the record at a given uptake, `laps` times or until it repeats, (N,)."""
+    order = model.order
+    cut = inflow.reshape(order.steps, order.chunks)
+    drying = np.minimum(cut, 0.0)
+    divisor = 1.0 - drying / FILM_FULL_KG_M2
+    dries = drying < 0.0
+    out = film.reshape(order.steps, order.chunks).copy()
+    for _ in range(laps):
+        end = out[-1].copy()
+        now = np.roll(end, 1)
+        if not model.case.periodic:
+            now[0] = 0.0
+        for k in range(order.steps):
+            grown = now + cut[k]
+            patchy = dries[k] & (grown < FILM_FULL_KG_M2)
+            now = np.minimum(np.where(patchy, now / divisor[k], grown), FILM_MAX_KG_M2)  # `vapour.film_step`
+            out[k] = now
+        if float(np.abs(out[-1] - end).max()) < 1e-12:
+            break
+    return out.ravel()
 
 
 def link_chunks(ends: Floats, keep: Floats, periodic: bool) -> Floats:

@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 Entry = NDArray[np.float64] | None
-Reach = tuple[Floats, Floats, Floats]
+Reach = tuple[Floats, Floats]
 Slopes = Iterable[tuple[int, Floats]]
 
 REGIME_ROWS: Final = 3
@@ -110,8 +110,8 @@ def _subtract(row: list[Entry], pivot_row: list[Entry], live: list[int], factor:
 def _cramer(a: list[list[Entry]], b: list[list[Entry]], reach: Reach, hours: int) -> None:
     """Solve the last three rows for every right-hand side, in place in b.
 
-    Where the first right-hand side moves the last unknown out of `reach`, or against its turn, that unknown
-    takes its limit and the two rows before it are solved for the rest.
+    Where the first right-hand side moves the last unknown out of `reach`, that unknown takes its
+    limit and the two rows before it are solved for the rest.
     """
     n = len(a)
     zero = np.zeros(hours)
@@ -127,8 +127,8 @@ def _cramer(a: list[list[Entry]], b: list[list[Entry]], reach: Reach, hours: int
     ]
     inverse = 1.0 / (p * cofactor[0][0] + q * cofactor[1][0] + r * cofactor[2][0])
     moved = sum((c * e for c, e in _pairs(cofactor[2], b, 0)), zero) * inverse
-    low, high, turn = reach
-    held = np.where(turn * moved < 0.0, np.where(turn > 0.0, high, low), np.clip(moved, low, high))
+    low, high = reach
+    held = np.clip(moved, low, high)
     stopped = ~(held == moved)
     some = bool(stopped.any())
     small = 1.0 / (p * t - q * s) if some else zero
@@ -158,8 +158,7 @@ def _pairs(row: list[Floats], b: list[list[Entry]], column: int) -> list[tuple[F
 def eliminate(a: list[list[Entry]], b: list[list[Entry]], reach: Reach, hours: int) -> list[list[Entry]]:
     """Solve A x = b for every column of b; both are overwritten. Returns b, now holding the solutions.
 
-    `reach`: lowest and highest move of the last unknown (the opening) in the first column, and the way it
-    must go (1, -1, or 0 for either).
+    `reach`: lowest and highest move of the last unknown (the opening) in the first column.
     """
     n = len(a)
     tmp = np.empty(hours)
