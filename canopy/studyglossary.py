@@ -9,6 +9,8 @@ M, DEG, C, W, PCT, H = "m", "degrees", "°C", "W/m2", "%", "h"
 KEYS: Final[dict[str, tuple[str, str]]] = {
     "title": ("", "heads report and workbook"),
     "units": ("", "units of report and workbook; CSV and Parquet stay SI"),
+    "show_day": ("", "the day that the report shows hour by hour; the brightest with a crop if absent"),
+    "show_hour": (H, "the hour of that day shown down the canopy, standard time; the brightest if absent"),
     "site.latitude": (DEG, "north positive; from the weather file if absent"),
     "site.longitude": (DEG, "east positive; from the weather file if absent"),
     "site.elevation": (M, "above the sea; from the file, else looked up"),

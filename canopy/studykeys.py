@@ -115,6 +115,8 @@ class StudyKeys(Section):
 
     title: Title = "Study"
     units: Literal["si", "us"] = "si"
+    show_day: Day = None
+    show_hour: Annotated[int, Field(ge=0, le=23)] | None = None
     site: SiteKeys = SiteKeys()
     weather: WeatherKeys
     house: HouseKeys

@@ -18,7 +18,7 @@ from reports.display import Display, number, percent
 from reports.figures import marks_of, month_labels
 from reports.figures_bands import band_budget, band_figure, band_table, band_words
 from reports.figures_crop import absorbed_figure, leaf_light_figure
-from reports.stand_figures import brightest_day, day_figure, profile_figure
+from reports.stand_figures import chosen_day, chosen_hour, day_figure, profile_figure
 from reports.summary import Summary
 
 
@@ -162,14 +162,13 @@ def crop(run: Run, rows: Sequence[Summary], show: Display) -> Section:
 
 
 def _day(run: Run, show: Display) -> list[Block]:
-    """Return one bright day hour by hour, and its brightest hour down the canopy."""
-    day = brightest_day(run)
-    of_day = np.flatnonzero(run.time.astype("datetime64[D]") == day)
-    noon = int(of_day[np.argmax(run.candidates[0].hourly["outside_par_umol_m2_s"][of_day])])
-    words = say.day_words(day)
+    """Return one day hour by hour, and one hour of it down the canopy: the study's, else the brightest."""
+    day = chosen_day(run)
+    hour = chosen_hour(run, day)
+    kind = "The brightest day" if run.study.keys.show_day is None else "One day"
     return [
-        replace(day_figure(run, day, show), title=f"The brightest day, {words}"),
-        replace(profile_figure(run, noon, show), title=f"Down the canopy, {say.hour_words(run.time[noon])}"),
+        replace(day_figure(run, day, show), title=f"{kind}, {say.day_words(day)}"),
+        replace(profile_figure(run, hour, show), title=f"Down the canopy, {say.hour_words(run.time[hour])}"),
     ]
 
 

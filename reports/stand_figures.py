@@ -32,6 +32,28 @@ BACK: Final = Mark("sent upwards by crop and floor", TO_OUT.colour, "dash", "sta
 SHARE: Final = Mark("share of leaves in the sun", "#5a645e", "dot", "diamond")
 
 
+def chosen_day(run: Run) -> np.datetime64:
+    """Return the day that the study asks to see if it is among the reported ones, else the brightest."""
+    wanted = run.study.keys.show_day
+    if wanted is not None:
+        hits = [day for day in run.days if str(day)[5:] == wanted]
+        if hits:
+            return np.datetime64(hits[0], "D")
+    return brightest_day(run)
+
+
+def chosen_hour(run: Run, day: np.datetime64) -> int:
+    """Return the row of the hour of that day that is shown down the canopy."""
+    of_day = np.flatnonzero(run.time.astype("datetime64[D]") == day)
+    wanted = run.study.keys.show_hour
+    if wanted is not None:
+        hour = (run.time[of_day] - run.time[of_day].astype("datetime64[D]")).astype("timedelta64[h]")
+        hits = of_day[hour.astype(int) == wanted]
+        if len(hits):
+            return int(hits[0])
+    return int(of_day[np.argmax(run.candidates[0].hourly["outside_par_umol_m2_s"][of_day])])
+
+
 def brightest_day(run: Run) -> np.datetime64:
     """Return the reported day with most PAR outside and, if there is one, a crop in every candidate."""
     crop = np.all([one.lai[run.hours] > LEAST_LEAF for one in run.candidates], axis=0)
