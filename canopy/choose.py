@@ -42,7 +42,9 @@ def _from_laboratory(study: Study, file: str, name: str, keys: CoveringKeys | No
     thickness = keys.thickness_mm if keys is not None else None
     wet = keys.wet if keys is not None else None
     lab = covering_from_spectrum(study.folder / file, name, thickness, wet=wet)
-    return Chosen(lab.covering, keys, tuple(f"{name}: {note}" for note in (*lab.assumed, *lab.limits)))
+    dirt = _dirt(keys) if keys is not None else ""
+    said = (*lab.assumed, *lab.limits, dirt)
+    return Chosen(lab.covering, keys, tuple(f"{name}: {note}" for note in said if note))
 
 
 def _own_covering(keys: CoveringKeys, study: Study) -> Chosen:
@@ -63,8 +65,19 @@ def _own_covering(keys: CoveringKeys, study: Study) -> Chosen:
         fitted = fit_quoted(quote, wet=keys.wet, age_years=keys.age_years)
     except UserError as error:
         raise UserError(f'{study.label}: covering "{keys.name}": {error}') from None
-    said = (*fitted.assumed, *fitted.contradictions, fitted.sensitivity)
+    aged = f"{keys.age_years:g} years old" if keys.age_years else ""
+    said = (*fitted.assumed, *fitted.contradictions, fitted.sensitivity, aged, _dirt(keys))
     return Chosen(fitted.covering, keys, tuple(f"{keys.name}: {note}" for note in said if note))
+
+
+def _dirt(keys: CoveringKeys) -> str:
+    """Return what dirt takes, in words; empty without any."""
+    if not keys.dirt_by_month:
+        return ""
+    low, high = 100.0 * min(keys.dirt_by_month), 100.0 * max(keys.dirt_by_month)
+    share = f"{high:g}" if low == high else f"{low:g} to {high:g}"
+    washed = f", washed on {', '.join(keys.wash_days)}" if keys.wash_days else ""
+    return f"dirt takes {share} % of the light by month{washed}"
 
 
 def choose_leaf(plan: Plan, study: Study) -> tuple[Leaf, tuple[str, ...]]:

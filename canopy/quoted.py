@@ -38,6 +38,11 @@ class Quote:
     thermal_transmittance: float | None = None
     u_value: float | None = None
 
+    @property
+    def says_anything(self) -> bool:
+        """Whether any figure is quoted; without one the covering is that of the library."""
+        return any(getattr(self, key) is not None for key in _RANGE_KEYS)
+
 
 @dataclass(frozen=True)
 class FittedCovering:
@@ -66,7 +71,9 @@ def fit_quoted(quote: Quote, *, wet: library.Wetting | None = None, age_years: f
     covering = replace(
         covering,
         name=quote.name,
-        title=f"{quote.name} (quoted, on the model of {quote.based_on})",
+        title=f"{quote.name} (quoted, on the model of {quote.based_on})"
+        if quote.says_anything
+        else base.title,
         haze=got.haze,
         source=_source(quote, base),
     )
@@ -75,6 +82,8 @@ def fit_quoted(quote: Quote, *, wet: library.Wetting | None = None, age_years: f
 
         loss = library.row(quote.based_on).figures["par_loss_per_year"].value
         covering = aged(covering, loss, age_years)
+    if not quote.says_anything:
+        return FittedCovering(covering, (f"as {quote.based_on} in the library",), (), "")
     assumed = (*_beyond_plain(quote, base), *_assumed(quote, got))
     return FittedCovering(covering, assumed, tuple(contradictions), _sensitivity(quote, got))
 
@@ -209,9 +218,7 @@ def _source(quote: Quote, base: Covering) -> str:
         if (value := getattr(quote, key)) is not None
     )
     rest = f"the rest as {quote.based_on} ({base.provenance}: {base.source})"
-    return (
-        f"quotation: {given}; {rest}" if given else f"nothing quoted; all as {quote.based_on} ({base.source})"
-    )
+    return f"quotation: {given}; {rest}" if given else f"as {quote.based_on}: {base.source}"
 
 
 _U_HINT: Final = " (EN 673 conditions: U of a heated house under a clear sky is .3-.8 higher)"

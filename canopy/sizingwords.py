@@ -67,7 +67,8 @@ def explain(told: Told) -> tuple[str, ...]:
         said.append("The study limits the heating: simulated loads are cut off at that limit.")
     if told.night is not None:
         said += _night(told.night)
-        said += _why(float(told.load[peak]), told.night)
+        opens = told.opening is not None and bool(told.opening[peak])
+        said += _why(float(told.load[peak]), told.night, opens)
     if told.many is not None:
         peaks = told.many.peak_w_m2
         said.append(
@@ -108,10 +109,14 @@ def _night(night: DesignNight) -> list[str]:
     return said
 
 
-def _why(peak: float, night: DesignNight) -> list[str]:
+def _why(peak: float, night: DesignNight, opens: bool) -> list[str]:
     """Return why the two answers differ, if they do."""
     if abs(peak - night.design_w_m2) < SAME_W_M2:
         return []
+    if peak > night.design_w_m2 and opens:
+        return [
+            "The simulated peak is higher than the design night: it falls on an hour in which a screen opens."
+        ]
     if peak > night.design_w_m2:
         return [
             "The simulated peak is higher than the design night: it falls on a colder or windier hour, or on "

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from typing import Final, Literal
 
@@ -81,8 +82,15 @@ def percent(share: float, digits: int = 0) -> str:
 
 
 def pretty(text: str) -> str:
-    """Return a sentence from another module with raised figures in its units."""
-    return text.replace("W/m2", "W/m²").replace("Wh/m2", "Wh/m²").replace("per m2", "per m²")
+    """Return a sentence from another module with raised figures in its units and true minus signs."""
+    text = re.sub(r"(?<![\w.])-(?= ?[\d−-])", "−", text.replace(" x ", " × "))
+    return re.sub(r"\bm2(?=K|\b)", "m²", re.sub(r"\bm3(?=K|\b)", "m³", text))
+
+
+def place_words(latitude: float, longitude: float) -> str:
+    """Return "36.1° N, 79.95° W"."""
+    north, east = "N" if latitude >= 0 else "S", "E" if longitude >= 0 else "W"
+    return f"{abs(latitude):g}° {north}, {abs(longitude):g}° {east}"
 
 
 @dataclass(frozen=True)

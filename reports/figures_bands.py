@@ -129,6 +129,10 @@ def band_figure(budgets: tuple[BandBudget, ...]) -> Figure:
         tuple(shown),
         330,
         per_candidate=True,
+        note="Below zero: walls and gable ends catch sunlight from beside the floor, more of this band than "
+        "is sent back out."
+        if any(_lowest(b) < 0 for b in budgets)
+        else "",
     )
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from typing import Final
 
 from canopy import library
 from canopy.library_rows import Figure
@@ -10,16 +11,24 @@ from canopy.run import Run
 from reports.blocks import Row, Table
 from reports.display import Display, number, percent
 
+QUOTED: Final = (
+    "par_normal", "par_hemispherical", "haze", "thermal_transmittance", "u_value", "spectrum",
+)  # fmt: skip
+
 
 def covering_ranges(run: Run) -> dict[str, tuple[str, Mapping[str, Figure]]]:
     """Return title and figures with ranges of every library covering in a run, by name."""
     known = set(library.covering_names())
-    coverings = {one.covering.name: one.covering for one in run.candidates}
-    return {
-        name: (covering.title, library.row(name).figures)
-        for name, covering in coverings.items()
-        if name in known
-    }
+    own = {keys.name: keys for keys in run.study.keys.covering}
+    found = {}
+    for one in run.candidates:
+        keys = own.get(one.plan.covering)
+        name = one.covering.name
+        if keys is not None:  # the library's figures hold where the study quotes none of its own
+            name = "" if any(getattr(keys, key) is not None for key in QUOTED) else str(keys.based_on)
+        if name in known:
+            found[name] = (one.covering.title, library.row(name).figures)
+    return found
 
 
 def range_words(run: Run) -> str | None:

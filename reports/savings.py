@@ -12,6 +12,7 @@ from typing import Final
 import numpy as np
 
 from canopy.columns import STORES
+from canopy.loadcurve import IDLE_W_M2
 from canopy.run import CandidateRun, Run
 
 LOSS_PATHS: Final[tuple[tuple[str, tuple[str, ...]], ...]] = (
@@ -41,7 +42,7 @@ class Saving:
 
 def saving(run: Run, base: CandidateRun, one: CandidateRun) -> Saving:
     """Return what a candidate saves against another, and where it stays."""
-    heated = (base.hourly["heat_delivered_w_m2"] > 0) | (one.hourly["heat_delivered_w_m2"] > 0)
+    heated = np.maximum(base.hourly["heat_delivered_w_m2"], one.hourly["heat_delivered_w_m2"]) >= IDLE_W_M2
     dark = base.hourly["outside_global_w_m2"] <= 0
     scale = run.weather.step_s / 3.6e6  # W/m2 per step to kWh/m2
     night = heated & dark

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from typing import Final
 
 import numpy as np
 
@@ -15,7 +16,17 @@ from reports.csvtables import mean_dli
 from reports.display import Display, number, percent
 from reports.figures import marks_of, month_labels
 from reports.figures_light import month_light_figures, trade_figure
+from reports.keywords import difference_words
 from reports.summary import Summary, house_differences
+
+DIRTY: Final = (
+    "Dirt is counted in every total of light and heat. The map of the sky and the turned ridge show the "
+    "house with a clean covering."
+)
+UNLIKE: Final = (
+    "Not every candidate stands on the same house. Where it does not, part of the difference in light, "
+    "leakage and heat belongs to the house and not to the covering:"
+)
 
 
 def which(run: Run, rows: Sequence[Summary], show: Display) -> Section:
@@ -71,6 +82,7 @@ def comparison(run: Run, rows: Sequence[Summary], show: Display) -> Table:
 def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list[Text | Table | Points]:
     """Return the table that keeps apart what comes from the covering and what from the house."""
     body, lines = [], []
+    dirty = any(one.dirt > 0 for one in rows)
     for at, (one, cand, mark) in enumerate(zip(rows, run.candidates, marks_of(run), strict=True)):
         shell, sheet = cand.shell, figures(cand.covering)
         body.append(
@@ -78,10 +90,11 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
                 one.name,
                 (
                     percent(sheet.par_hemispherical, 1),
+                    *((percent(one.dirt, 1),) if dirty else ()),
                     percent(sheet.haze),
                     percent(sheet.thermal_transmittance),
                     show.bare(sheet.u_value_w_m2_cover_k, "W/m2/K"),
-                    percent(one.house_par / one.sheet_par if one.sheet_par > 0 else float("nan"), 1),
+                    percent(one.shape_share, 1),
                     number(shell.roof_ratio + shell.wall_ratio, 2),
                     number(shell.leakage_per_hour, 2),
                     show.bare(one.total["air_change_loss_kwh_m2"], "kWh/m2"),
@@ -91,12 +104,13 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
         )
         found = [item for item in house_differences(run, at) if at]
         if found:
-            lines.append(f"With {one.name}: {say.difference_words(found, rows[0].name)}.")
+            lines.append(f"With {one.name}: {difference_words(found, rows[0].name)}.")
     table = Table(
         "What comes from the covering, what from the house",
         (
             "candidate",
-            "covering: passes PAR, diffuse",
+            "covering: passes PAR, diffuse" + (", clean" if dirty else ""),
+            *(("of that, dirt takes",) if dirty else ()),
             "haze",
             "passes long-wave",
             "U-value",
@@ -106,19 +120,13 @@ def covering_and_house(run: Run, rows: Sequence[Summary], show: Display) -> list
             "heat lost by leakage",
         ),
         tuple(body),
-        ("", "", "", "", show.text("W/m2/K"), "", "m²/m²", "per hour", show.text("kWh/m2")),
+        ("",) * (5 if dirty else 4) + (show.text("W/m2/K"), "", "m²/m²", "per hour", show.text("kWh/m2")),
     )
     blocks: list[Text | Table | Points] = [table]
+    if dirty:
+        blocks.append(Text((DIRTY,)))
     if lines:
-        blocks.append(
-            Text(
-                (
-                    "Not every candidate stands on the same house. Where it does not, part of the "
-                    "difference in light, leakage and heat belongs to the house and not to the covering:",
-                )
-            )
-        )
-        blocks.append(Points(tuple(lines)))
+        blocks += [Text((UNLIKE,)), Points(tuple(lines))]
     return blocks
 
 

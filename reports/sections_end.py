@@ -10,12 +10,13 @@ from canopy.run import Run
 from reports import sentences as say
 from reports.blocks import Block, Chooser, Each, Listing, Points, Row, Section, Table, Text
 from reports.csvtables import zone_offset
-from reports.display import Display, number
+from reports.display import Display, number, place_words
 from reports.figures import marks_of
 from reports.figures_climate import climate_figure
+from reports.keywords import value_words
 from reports.method import METHOD
 from reports.ranges import range_table
-from reports.summary import Summary
+from reports.summary import Summary, notes_of
 
 TEMPERATURES = ("temp_air_min_c", "temp_air_mean_c", "temp_air_max_c", "leaf_min_c", "leaf_sunlit_max_c")
 HOURS = (
@@ -103,7 +104,10 @@ def _input_table(run: Run) -> Table:
     rows = []
     for table, title in INPUT_TABLES:
         for key in type(getattr(run.candidates[0].plan, table)).model_fields:
-            values = [say.value_words(getattr(getattr(one.plan, table), key)) for one in run.candidates]
+            values = [
+                value_words(getattr(getattr(one.plan, table), key), f"{table}.{key}")
+                for one in run.candidates
+            ]
             same = len(set(values)) == 1
             rows.append(
                 Row(f"{title}: {key}", (values[0],) * len(values) if same else tuple(values), strong=not same)
@@ -141,18 +145,18 @@ def inputs(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     del rows
     weather, site = run.weather, run.weather.site
     lead = (
-        f"{weather.title}: {site.latitude:g}°, {site.longitude:g}°, {show.say(site.elevation, 'm')} above "
-        f"the sea, clock of the weather file UTC{zone_offset(weather.utc_offset_h)}, schedules in "
+        f"{weather.title}: {place_words(site.latitude, site.longitude)}, {show.say(site.elevation, 'm')} "
+        f"above the sea, clock of the weather file UTC{zone_offset(weather.utc_offset_h)}, schedules in "
         f"{site.timezone} time. {number(len(run.hours))} hours are reported. Source: {weather.source}.",
     )
-    notes = [f"{one.plan.name}: {note}" for one in run.candidates for note in (*one.notes, *one.heat.notes)]
+    notes = notes_of(run)
     blocks: list[Block | Each | Chooser] = [Text(lead, lead=True), _input_table(run), _sources(run)]
     ranges = range_table(run, show)
     if ranges is not None:
         blocks.append(ranges)
-    if notes or run.notes:
+    if notes:
         blocks.append(Text(("Assumptions made on the way:",)))
-        blocks.append(Points((*run.notes, *dict.fromkeys(notes))))
+        blocks.append(Points(notes))
     blocks.append(
         Table(
             "Method, stage by stage",

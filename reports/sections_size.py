@@ -14,13 +14,14 @@ from reports.display import NONE, Display, number, percent, pretty
 from reports.figures import marks_of
 from reports.figures_heat import duration_figure
 from reports.sections_years import energy_table, several_years
-from reports.summary import Summary
+from reports.summary import Summary, peaks_as_screens_open
 
 
 def size(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     """Return peak, duration, design night step by step, boiler sizes, stores and fuel."""
     title, question = "Heating size", "How big must the heating be?"
-    each = tuple(_one(one, show) for one in run.candidates)
+    nominal = run.weather.typical or run.weather.clear_sky
+    each = tuple(_one(one, nominal, show) for one in run.candidates)
     blocks: list[Block | Each | Chooser] = [
         Text(_lead(run, rows, show), lead=True),
         size_table(run, rows, show),
@@ -121,14 +122,7 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def peaks_as_screens_open(one: CandidateRun) -> bool:
-    """Return whether the largest hour is one in which the screens open."""
-    load, drawn = one.hourly["heat_delivered_w_m2"], one.hourly["screen_drawn_share"]
-    at = int(load.argmax())
-    return bool(one.screens and at > 0 and load[at] > 0 and drawn[at] < drawn[at - 1] - 0.5)
-
-
-def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
+def _one(one: CandidateRun, nominal: bool, show: Display) -> tuple[Block, ...]:
     blocks: list[Block] = []
     night = one.design
     if night is not None:
@@ -142,7 +136,7 @@ def _one(one: CandidateRun, show: Display) -> tuple[Block, ...]:
         recovery = f"Recovery after the night: {night.recovery.text}."
         blocks.append(Points((pretty(on_paper), *([pretty(recovery)] if show.system == "us" else []))))
     if show.system == "si":
-        blocks.append(Points(tuple(map(pretty, one.sizing.explained))))
+        blocks.append(Points(tuple(say.dated(pretty(text), nominal) for text in one.sizing.explained)))
     elif one.sizing.finite is not None:
         blocks.append(Text((_finite_words(one, show),)))
     if one.sizing.design_w_m2 > 0:

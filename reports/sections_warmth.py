@@ -49,8 +49,9 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     if total > 0:
         air = base.total["air_change_loss_kwh_m2"] + base.total["venting_kwh_m2"]
         lines.append(
-            f"Of all that leaves this house, {percent(base.total['sky_loss_kwh_m2'] / total)} goes to the "
-            f"sky as long-wave radiation and {percent(air / total)} with the air that leaks out or is vented."
+            "Of all that leaves this house, the sun's warmth included, "
+            f"{percent(base.total['sky_loss_kwh_m2'] / total)} goes to the sky as long-wave radiation and "
+            f"{percent(air / total)} with the air that leaks out or is vented."
         )
     damp = max(rows, key=lambda r: r.total["heat_for_humidity_kwh_m2"])
     damp_kwh = damp.total["heat_for_humidity_kwh_m2"]

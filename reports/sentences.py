@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
-from typing import Any, Final
+from typing import Final
 
 import numpy as np
 
 from canopy.run import Run
-from canopy.seasonal import Seasonal
 from reports.display import NONE, Display, number, percent
 from reports.ranges import range_words
-from reports.summary import FULL_YEAR_DAYS, Summary, beaten, dark_months
+from reports.summary import FULL_YEAR_DAYS, Summary, beaten, dark_months, peaks_as_screens_open
 
 MONTHS: Final = (
     "January", "February", "March", "April", "May", "June",
@@ -21,33 +21,6 @@ MONTHS: Final = (
 SAME: Final = 0.005  # differences below half a per cent are not told apart in words
 
 DARK: Final = "No sunlight falls in the reported season"
-
-KEY_WORDS: Final = {
-    "house.form": "form",
-    "house.spans": "spans",
-    "house.span_width": "span width",
-    "house.length": "length",
-    "house.gutter_height": "gutter height",
-    "house.pitch": "pitch",
-    "house.pitch_other": "second pitch",
-    "house.rise": "rise of the arch",
-    "house.ridge_azimuth": "direction of the ridge",
-    "house.gutter_width": "gutter width",
-    "house.gutter_depth": "gutter depth",
-    "house.ridge_width": "ridge width",
-    "house.ridge_depth": "ridge depth",
-    "house.bar_spacing": "distance of bars",
-    "house.bar_width": "bar width",
-    "house.bar_depth": "bar depth",
-    "house.leakage_per_hour": "leakage per hour",
-    "house.vent_area_fraction": "vent area",
-    "house.insect_net": "insect net",
-    "house.wind_exposure": "exposure to wind",
-    "house.perimeter_loss": "loss of the foundation",
-    "house.wall_covering": "covering of the walls",
-    "house.gable_covering": "covering of the gables",
-    "house.paint": "shading paint",
-}
 
 
 def day_words(day: np.datetime64) -> str:
@@ -59,6 +32,16 @@ def day_words(day: np.datetime64) -> str:
 def hour_words(at: np.datetime64) -> str:
     """Return "3 January, 05:00"."""
     return f"{day_words(at)}, {str(at.astype('datetime64[m]'))[11:16]}"
+
+
+def dated(text: str, nominal: bool) -> str:
+    """Return a text with its "1990-01-03 05:00" in words, without the year where the year is nominal."""
+
+    def words(found: re.Match[str]) -> str:
+        at = np.datetime64(f"{found[1]}T{found[2]}")
+        return hour_words(at) if nominal else f"{day_words(at)} {found[1][:4]}, {found[2]}"
+
+    return re.sub(r"(\d{4}-\d\d-\d\d) (\d\d:\d\d)", words, text)
 
 
 def short_day(day: np.datetime64) -> str:
@@ -165,7 +148,7 @@ def cold_words(rows: Sequence[Summary], show: Display) -> str:
 def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     """Return one sentence per further candidate: heat, light and peak against the first one."""
     base, lines = rows[0], []
-    for one in rows[1:]:
+    for one, candidate in zip(rows[1:], run.candidates[1:], strict=True):
         dark = f" ({change(one.dark_inside_mol, base.dark_inside_mol, 'light')} in {dark_words(run)})"
         text = (
             f"Against {base.name}, {one.name} takes {_heat_change(one, base, show)} and gives the crop "
@@ -174,7 +157,8 @@ def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         if max(one.peak_w, base.peak_w) > 0:
             mine, theirs = show.say(one.peak_w, "W/m2"), show.say(base.peak_w, "W/m2")
             more = "as well" if mine == theirs else f"instead of {theirs}"
-            text += f"; the largest hour takes {mine} {more}"
+            when = ", in which the screens open," if peaks_as_screens_open(candidate) else ""
+            text += f"; the largest hour{when} takes {mine} {more}"
         text += "."
         saved, lost = base.heat_kwh - one.heat_kwh, base.inside_mol - one.inside_mol
         if saved > SAME * base.heat_kwh and lost > SAME * base.inside_mol:
@@ -235,46 +219,6 @@ def doubts(run: Run) -> tuple[str, ...]:
         lines.append(f"Long-wave radiation from the sky is computed, not measured, in {share} of the hours.")
     ranges = range_words(run)
     return tuple(lines) if ranges is None else (*lines, ranges)
-
-
-def value_words(value: Any) -> str:
-    """Return a study value as a reader writes it."""
-    if isinstance(value, Seasonal):
-        if len(set(value.values)) == 1:
-            return f"{value.values[0]:g}"
-        return f"{min(value.values):g} to {max(value.values):g} by date"
-    if isinstance(value, bool):
-        return "yes" if value else "no"
-    if isinstance(value, float | int):
-        return f"{value:g}"
-    if value is None:
-        return "as usual"
-    return str(value) if not isinstance(value, list) else f"{len(value)} entries"
-
-
-SHAPE_KEYS: Final = tuple(
-    f"house.{key}"
-    for key in (
-        "gutter_height", "pitch", "pitch_other", "rise", "gutter_width", "gutter_depth",
-        "ridge_width", "ridge_depth", "bar_spacing", "bar_width", "bar_depth",
-    )
-)  # fmt: skip
-"""Keys that go with the form: a reader needs the form in a sentence, their numbers in the table of inputs."""
-
-
-def difference_words(found: Sequence[tuple[str, Any, Any]], base: str) -> str:
-    """Return how a candidate's house, crop, climate or heating differs from the first candidate's."""
-    other_form = any(key == "house.form" for key, _, _ in found)
-    shape = [key for key, _, _ in found if key in SHAPE_KEYS]
-    parts = []
-    for key, theirs, mine in found:
-        if other_form and key in shape:
-            continue
-        name = KEY_WORDS.get(key, key.replace(".", " ").replace("_", " "))
-        parts.append(f"{name} {value_words(mine)} instead of {value_words(theirs)}")
-    if other_form and shape:
-        parts.append("gutters, ridges and bars of its own (see inputs)")
-    return f"{listed(parts)} (against {base})"
 
 
 def count(number_of: float, one: str, many: str) -> str:

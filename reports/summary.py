@@ -13,6 +13,7 @@ from canopy.bands import SOLAR
 from canopy.energy import Energy
 from canopy.ledger import season
 from canopy.run import CandidateRun, Run
+from canopy.soiling import dirt_left
 from reports.csvtables import mean_dli
 
 Floats = NDArray[np.float64]
@@ -37,9 +38,16 @@ class Summary:
     dark_dli: float  # mean daily light at the crop in the darkest months, mol m-2 d-1; nan without a crop
     dark_inside_mol: float  # PAR at the crop over the darkest months
     sheet_par: float  # PAR, diffuse, through the covering alone (dry)
-    house_par: float  # PAR, isotropic, whole house (dry)
+    house_par: float  # PAR, isotropic, whole house (dry), under the dirt of the season
+    dirt: float  # share of the PAR that dirt on the covering takes, weighted by the light outside
     cost: float | None  # fuel and power of the whole house over the record; None without a price
     currency: str
+
+    @property
+    def shape_share(self) -> float:
+        """Share of the diffuse PAR behind the covering that shape and structure let through to the crop."""
+        behind = self.sheet_par * (1.0 - self.dirt)
+        return self.house_par / behind if behind > 0 else float("nan")
 
     @property
     def light_share(self) -> float:
@@ -56,6 +64,37 @@ def dark_months(run: Run) -> Floats:
     return dark
 
 
+def dirt_share(run: Run, one: CandidateRun) -> float:
+    """Return the share of the season's PAR that dirt on the covering takes; 0 where the study names none."""
+    own = next((c for c in run.study.keys.covering if c.name == one.plan.covering), None)
+    left = dirt_left(own, run.weather.time)
+    if left is None:
+        return 0.0
+    lost, light = 1.0 - left[run.hours], one.hourly["outside_par_umol_m2_s"]
+    return float(np.average(lost, weights=light if light.any() else None))
+
+
+def peaks_as_screens_open(one: CandidateRun) -> bool:
+    """Return whether the largest hour is one in which the screens open."""
+    load, drawn = one.hourly["heat_delivered_w_m2"], one.hourly["screen_drawn_share"]
+    at = int(load.argmax())
+    return bool(one.screens and at > 0 and load[at] > 0 and drawn[at] < drawn[at - 1] - 0.5)
+
+
+def notes_of(run: Run) -> tuple[str, ...]:
+    """Return what a reader must know of a run and its candidates, each note once with all it holds for."""
+    holds: dict[str, list[str]] = {}
+    for one in run.candidates:
+        for note in dict.fromkeys((*one.notes, *one.heat.notes)):
+            holds.setdefault(note, []).append(one.plan.name)
+    every = len(run.candidates)
+    own = [
+        f"{'all candidates' if len(names) == every > 1 else '; '.join(names)}: {note}"
+        for note, names in holds.items()
+    ]
+    return (*run.notes, *own)
+
+
 def summarise(run: Run, one: CandidateRun) -> Summary:
     """Return the numbers of one candidate."""
     total = season(one.hourly, run.weather.step_s)
@@ -66,6 +105,7 @@ def summarise(run: Run, one: CandidateRun) -> Summary:
     in_dark = np.isin(days, np.array(run.months)[dark])
     dli = mean_dli(run, one)[1][dark]
     energy: Energy | None = one.sizing.energy
+    dirt = dirt_share(run, one)
     return Summary(
         name=one.plan.name,
         total=total,
@@ -78,7 +118,8 @@ def summarise(run: Run, one: CandidateRun) -> Summary:
         dark_dli=float(np.nanmean(dli)) if np.isfinite(dli).any() else float("nan"),
         dark_inside_mol=float(inside[in_dark].sum()),
         sheet_par=float(one.covering.solar_dry.diffuse_in[PAR]),
-        house_par=float(one.transmission.isotropic[PAR]),
+        house_par=float(one.transmission.isotropic[PAR]) * (1.0 - dirt),
+        dirt=dirt,
         cost=None if energy is None else energy.total_cost,
         currency="" if energy is None else _currency(energy),
     )

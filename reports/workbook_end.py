@@ -7,8 +7,10 @@ from typing import Any
 from canopy.cautions import CAUTIONS
 from canopy.columns import GAINS, LOSSES, STORES
 from canopy.fuel import fuels
+from reports.display import place_words
+from reports.keywords import value_words
 from reports.method import METHOD
-from reports.sentences import value_words
+from reports.summary import notes_of
 from reports.workbook_base import Book, day_sheet, fit_row
 
 WIDE = 110
@@ -29,7 +31,7 @@ def readme_sheet(book: Book) -> None:
     lines: list[tuple[str, str]] = [
         ("Study", run.study.label),
         ("Weather", f"{weather.title}; {weather.source}"),
-        ("Place", f"{site.latitude:g}°, {site.longitude:g}°, {site.elevation:.0f} m above the sea"),
+        ("Place", f"{place_words(site.latitude, site.longitude)}, {site.elevation:.0f} m above the sea"),
         ("Period", f"{run.days[0]} to {run.days[-1]}, {len(run.days)} days, {len(run.time)} hours"),
         ("Days", "standard-time days of the weather file; schedules run in civil time"),
         ("Units", f"{units}; the unit stands below every heading; every m2 or ft2 is floor"),
@@ -48,7 +50,7 @@ def readme_sheet(book: Book) -> None:
         book.text(sheet, row, 1, words, book.wrap)
         fit_row(sheet, row, (words, WIDE))
         row += 1
-    for head, some in (("Notes", _notes(book)), ("Cautions", CAUTIONS)):
+    for head, some in (("Notes", notes_of(book.run)), ("Cautions", CAUTIONS)):
         for at, words in enumerate(some):
             book.text(sheet, row, 0, head if at == 0 else "", book.head_left)
             book.text(sheet, row, 1, words, book.wrap)
@@ -59,12 +61,6 @@ def readme_sheet(book: Book) -> None:
 
 def _stem(name: str) -> str:
     return name.removesuffix("_w_m2")
-
-
-def _notes(book: Book) -> tuple[str, ...]:
-    run = book.run
-    own = [f"{one.plan.name}: {note}" for one in run.candidates for note in (*one.notes, *one.heat.notes)]
-    return (*run.notes, *dict.fromkeys(own))
 
 
 def inputs_sheet(book: Book) -> None:
@@ -83,7 +79,7 @@ def inputs_sheet(book: Book) -> None:
     for table in TABLES:
         for key in type(getattr(run.candidates[0].plan, table)).model_fields:
             values = [getattr(getattr(one.plan, table), key) for one in run.candidates]
-            rows.append((f"{table}.{key}", [value_words(value) for value in values]))
+            rows.append((f"{table}.{key}", [value_words(value, f"{table}.{key}") for value in values]))
     for key, cells in rows:
         book.text(sheet, row, 0, key, book.bold)
         for col, value in enumerate(cells, start=1):

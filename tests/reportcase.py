@@ -334,7 +334,8 @@ def make_run(
 ) -> Run:
     """Return a whole made-up run that reports some months of its year.
 
-    `first_days`: only the first ones of these months; `dark`: no sunlight in them; not `heated`: none is delivered.
+    `first_days`: only the first ones of these months; `dark`: no sunlight in them; not `heated`: no heat is
+    delivered.
     """
     fake = fakes(4) if fake is None else fake
     weather = make_weather()

@@ -17,8 +17,9 @@ from canopy.columns import LOSSES, STORES
 from canopy.ledger import by_group, groups, season
 from canopy.optics import Screen
 from canopy.run import Run
+from canopy.studykeys import CoveringKeys
 from reports import sentences as say
-from reports.display import NONE, Display, number, percent
+from reports.display import NONE, Display, number, percent, pretty
 from reports.figures import (
     COLOURS,
     FAINT,
@@ -37,12 +38,14 @@ from reports.figures import (
 from reports.figures_climate import AIR_OUT, HUMID, INSIDE, MEAN
 from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
+from reports.keywords import difference_words
 from reports.nights import find_nights, night_pattern
 from reports.page import sections_of
+from reports.ranges import covering_ranges
 from reports.savings import LOSS_PATHS, saving
 from reports.season import in_order
-from reports.sections_size import peaks_as_screens_open
-from reports.summary import beaten, house_differences, summaries
+from reports.sections_choice import covering_and_house
+from reports.summary import beaten, house_differences, notes_of, peaks_as_screens_open, summaries
 from reports.terminal import StageLine, plain, result_table
 from tests.reportcase import Fake, fakes, make_run
 
@@ -120,13 +123,13 @@ def test_who_is_beaten_on_all_counts() -> None:
 def test_house_differences_are_said_with_both_values(run: Run) -> None:
     found = house_differences(run, 1)
     arch = [("house.form", "gable", "arch"), ("house.bar_width", 0.03, 0.06), ("house.rise", None, 1.9)]
-    assert say.difference_words(arch, "glass") == (
+    assert difference_words(arch, "glass") == (
         "form arch instead of gable and gutters, ridges and bars of its own (see inputs) (against glass)"
     )
     assert [key for key, _, _ in found] == ["house.ridge_azimuth", "house.leakage_per_hour"]
-    words = say.difference_words(found, "single glass")
+    words = difference_words(found, "single glass")
     assert "direction of the ridge 90 instead of 0" in words
-    assert "leakage per hour 0.7 instead of as usual" in words
+    assert "leakage per hour 0.7 instead of by kind of covering" in words
     assert house_differences(run, 2) == []
 
 
@@ -363,3 +366,55 @@ def test_a_peak_at_the_opening_of_screens_is_named(run: Run) -> None:
     shut = replace(opened, hourly={**one.hourly, "screen_drawn_share": np.ones(len(run.time))})
     assert not peaks_as_screens_open(shut)
     assert not peaks_as_screens_open(one)
+
+
+def test_sentences_of_other_rooms_are_set_for_readers() -> None:
+    assert pretty("1.4 m2/m2 x 5.8 W/m2K x (0.8 - -11.1) K") == "1.4 m²/m² × 5.8 W/m²K × (0.8 − −11.1) K"
+    assert pretty("1990-12-25 07:00, 99-6") == "1990-12-25 07:00, 99-6"
+    peak = "345 W/m² (1990-12-25 07:00)"
+    assert say.dated(peak, nominal=True) == "345 W/m² (25 December, 07:00)"
+    assert say.dated(peak, nominal=False) == "345 W/m² (25 December 1990, 07:00)"
+
+
+def _dirty(run: Run) -> Run:
+    """Return a run whose first candidate stands under a library glass, half of its light lost in June."""
+    loss = [0.0] * 5 + [0.5] + [0.0] * 6
+    own = CoveringKeys(name="in use", based_on="glass-clear-4", dirt_by_month=loss)
+    plan = replace(run.candidates[0].plan, covering="in use")
+    keys = run.study.keys.model_copy(update={"covering": [own]})
+    first = replace(run.candidates[0], plan=plan, notes=("in use: dirt", "seen"))
+    others = tuple(replace(one, notes=("seen",)) for one in run.candidates[1:])
+    return replace(run, study=replace(run.study, keys=keys), candidates=(first, *others))
+
+
+def test_dirt_is_named_where_it_counts(run: Run) -> None:
+    dirty = _dirty(run)
+    first, second, *_ = summaries(dirty)
+    outside = run.candidates[0].hourly["outside_par_umol_m2_s"]
+    month = run.time.astype("datetime64[M]").astype(int) % 12 + 1
+    june = outside[month == 6].sum() / outside.sum()  # levels run straight from the middle of month to month
+    assert 0.3 * june < first.dirt < june
+    assert second.dirt == 0.0
+    clean = summaries(run)[0]
+    assert first.house_par == pytest.approx(clean.house_par * (1.0 - first.dirt))
+    assert first.shape_share == pytest.approx(clean.shape_share)
+    texts = _texts(covering_and_house(dirty, summaries(dirty), Display("si")))
+    assert "of that, dirt takes" in texts
+    assert percent(first.dirt, 1) in texts
+    assert "of that, dirt takes" not in _texts(covering_and_house(run, summaries(run), Display("si")))
+
+
+def test_notes_stand_once_with_all_they_hold_for(run: Run) -> None:
+    notes = notes_of(_dirty(run))
+    assert "single glass: in use: dirt" in notes
+    assert "all candidates: seen" in notes
+
+
+def test_a_library_covering_in_use_keeps_its_ranges(run: Run) -> None:
+    assert covering_ranges(run) == {}
+    assert list(covering_ranges(_dirty(run))) == ["glass-clear-4"]
+    quoted = _dirty(run)
+    keys = quoted.study.keys
+    own = keys.covering[0].model_copy(update={"u_value": 5.0})
+    study = replace(quoted.study, keys=keys.model_copy(update={"covering": [own]}))
+    assert covering_ranges(replace(quoted, study=study)) == {}
