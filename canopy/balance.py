@@ -173,7 +173,7 @@ def first_guess(model: Model, warm: HeatResult | None = None) -> State:
     pipe = np.clip(air + 1.5 * (air - out), air, np.maximum(model.case.heating.flow_max_c, air))
     u[ix.pipe] = np.where(np.isfinite(model.heat_at), pipe, air)
     u[ix.vent] = np.where(model.open_all, model.gap_max + model.vent_max, 0.0)
-    state = State(u, np.zeros(hours), np.empty(0), air - 1.0)
+    state = State(u, np.zeros(hours), np.empty(0), air - 1.0, np.empty(0))
     if warm is not None:
         _take_over(model, state, warm)
     set_soil(model, state)
@@ -181,19 +181,21 @@ def first_guess(model: Model, warm: HeatResult | None = None) -> State:
 
 
 def _take_over(model: Model, state: State, warm: HeatResult) -> None:
-    """Start from a like case's temperatures; what does not fit (layers, screens) keeps its guess."""
+    """Start from a like case; of an unlike one (layers, screens) what fits, the rest keeps its guess."""
     ix, u, into = model.index, state.unknown, model.order.into
+    if warm.start is None:
+        return
+    *rows, state.film, state.drive = into(warm.start)
+    most = model.gap_max + model.vent_max
+    if len(warm.temp_covering) == ix.layers and len(warm.temp_screen) == ix.screens:
+        for k, row in enumerate(rows):
+            u[k] = row
+        u[ix.vent] = np.where(model.open_all, most, np.minimum(u[ix.vent], most))
+        return
     u[ix.leaf], u[ix.floor], u[ix.pipe] = into(warm.temp_leaf), into(warm.temp_floor), into(warm.temp_pipe)
     u[ix.air0_vapour] = into(warm.vapour_pressure)
-    if warm.temp_covering.shape[0] == ix.layers:
-        for layer in range(ix.layers):
-            u[ix.cover(layer)] = into(warm.temp_covering[layer])
-    if warm.temp_screen.shape[0] == ix.screens:
-        for number in range(ix.screens):
-            u[ix.screen(number)] = into(warm.temp_screen[number])
-    u[ix.vent] = np.where(into(warm.vent_open) > 0.0, model.gap_max + into(warm.vent_open), 0.0)
-    state.film = vp.FILM_FULL_KG_M2 * into(warm.wet)
-    state.drive = u[ix.floor] + (into(warm.soil_store) + into(warm.deep_loss)) / model.soil.film
+    open_part = into(warm.vent_open)
+    u[ix.vent] = np.where(model.open_all, most, np.where(open_part > 0.0, model.gap_max + open_part, 0.0))
 
 
 def grey(case: HeatCase) -> HeatCase:

@@ -176,3 +176,4 @@ class HeatResult:
     retried_hours: int
     worst: str  # which hour and node is worst, for run.json
     notes: tuple[str, ...] = field(default=())
+    start: Floats | None = None  # the solved iterate, for a like case to start from (see `balance`)

@@ -38,7 +38,7 @@ class Exchange:
     base: list[Floats]  # per pair (T, N or 1)
     wet: list[Floats | None]
     gap: list[Floats | None]
-    out_base: list[Floats]  # per surface, share absorbed of what falls on the covering from outside
+    out_base: list[Floats | None]  # per surface, share absorbed of what falls on the covering; None: opaque
     out_wet: list[Floats | None]
     out_gap: list[Floats | None]
 
@@ -195,13 +195,15 @@ def _exchange(case: HeatCase, p: Pipes, gap: Floats, drawn: Floats, gap_max: Flo
         return hourly(values) if np.abs(values).max() > 1e-9 else None
 
     count = pair.shape[0]
+    parts = (outside, wet[1], by_gap[1])
+    seen = [max(float(np.abs(part[i]).max()) for part in parts) > 1e-12 for i in range(count)]
     pairs = [(i, j) for i in range(count) for j in range(i) if np.abs(pair[i, j]).max() > 1e-12]
     return Exchange(
         pairs=pairs,
         base=[hourly(pair[i, j]) for i, j in pairs],
         wet=[change(wet[0][i, j]) for i, j in pairs],
         gap=[change(by_gap[0][i, j]) for i, j in pairs],
-        out_base=[hourly(outside[i]) for i in range(count)],
+        out_base=[hourly(outside[i]) if seen[i] else None for i in range(count)],
         out_wet=[change(wet[1][i]) for i in range(count)],
         out_gap=[change(by_gap[1][i]) for i in range(count)],
     )

@@ -115,14 +115,14 @@ def result(model: Model, state: State, c: Context, passes: int, retried: int) ->
         "covering_store": store(*covers, *screens),
         "drain_loss": of("drain"),
     }
-    heat, solar = f["heat"], f["solar"]
+    heat, solar = np.maximum(f["heat"], 0.0), f["solar"]
     closure = heat + solar - sum(terms.values(), zero)
-    humid = np.where(c.humid & (f["opening"] > 0.0), np.clip(of("vent_dry"), 0.0, np.maximum(heat, 0.0)), 0.0)
+    humid = np.where(c.humid & (f["opening"] > 0.0), np.clip(of("vent_dry"), 0.0, heat), 0.0)
     worst = int(np.argmax(np.abs(back(closure))))
     values = {**terms, **_state_of(m, c, covers, screens), **_water_of(m, c)}
     values |= {
         "solar": solar,
-        "heat_delivered": np.maximum(heat, 0.0),
+        "heat_delivered": heat,
         "heat_for_humidity": humid,
         "through_loss": of("through"),
         "skin_loss": of("skin"),
@@ -134,6 +134,7 @@ def result(model: Model, state: State, c: Context, passes: int, retried: int) ->
         retried_hours=retried,
         worst=f"hour {worst}: {abs(back(closure)[worst]):.1e} W/m2 after {passes} passes",
         notes=_notes(model),
+        start=back(np.array([*state.unknown, state.film, state.drive])),
     )
 
 

@@ -79,45 +79,51 @@ def longwave(c: Context) -> None:
     wet_column = c.n + WET
     for (i, j), base, wet, gap in zip(x.pairs, x.base, x.wet, x.gap, strict=True):
         a, b = nodes[i], nodes[j]
-        area = base
-        if wet is not None:
-            area = area + wet * c.wet
-        if gap is not None:
-            area = area + gap * c.gap
         diff = emission[:, i] - emission[:, j]
-        slopes = [(a, _sum(area, rise[:, i])), (b, -_sum(area, rise[:, j]))]
-        if wet is not None:
-            slopes.append((wet_column, _sum(wet, diff)))
-        if gap is not None:
-            slopes.append((ix.vent, _sum(gap, diff) * c.gap_slope))
-        system.flow(_sum(area, diff), a, b, slopes)
+        flux, up, down = _sum(base, diff), _sum(base, rise[:, i]), _sum(base, rise[:, j])
+        slopes: list[tuple[int, Floats]] = []
+        for change, share, column, slope in (
+            (wet, c.wet, wet_column, 1.0), (gap, c.gap, ix.vent, c.gap_slope)
+        ):  # fmt: skip
+            if change is None:
+                continue
+            by = _sum(change, diff)
+            flux += share * by
+            up += share * _sum(change, rise[:, i])
+            down += share * _sum(change, rise[:, j])
+            slopes.append((column, by * slope))
+        system.flow(flux, a, b, [(a, up), (b, -down), *slopes])
     sky_terms: dict[str, Floats] = {"skin": np.zeros(m.hours), "through": np.zeros(m.hours)}
     total = np.zeros(m.hours)
     for i, node in enumerate(nodes):
-        share = x.out_base[i]
-        wet, gap = x.out_wet[i], x.out_gap[i]
-        if wet is not None:
-            share = share + wet * c.wet
-        if gap is not None:
-            share = share + gap * c.gap
-        net = m.cover_size * emission[:, i] - m.incident
-        slopes = [(node, m.cover_size * _sum(share, rise[:, i]))]
-        if wet is not None:
-            slopes.append((wet_column, _sum(wet, net)))
-        if gap is not None:
-            slopes.append((ix.vent, _sum(gap, net) * c.gap_slope))
-        out = _sum(share, net)
-        system.flow(out, node, None, slopes)
-        sky = m.sky_size * _sum(share, emission[:, i] - m.sky)
-        sky_terms["skin" if i < ix.layers else "through"] += sky
+        seen = x.out_base[i]
+        if seen is None:
+            continue
+        net, sky = m.cover_size * emission[:, i] - m.incident, emission[:, i] - m.sky
+        out, above, up = _sum(seen, net), _sum(seen, sky), _sum(seen, rise[:, i])
+        slopes = []
+        for change, share, column, slope in (
+            (x.out_wet[i], c.wet, wet_column, 1.0), (x.out_gap[i], c.gap, ix.vent, c.gap_slope)
+        ):  # fmt: skip
+            if change is None:
+                continue
+            by = _sum(change, net)
+            out += share * by
+            above += share * _sum(change, sky)
+            up += share * _sum(change, rise[:, i])
+            slopes.append((column, by * slope))
+        system.flow(out, node, None, [(node, m.cover_size * up), *slopes])
+        sky_terms["skin" if i < ix.layers else "through"] += m.sky_size * above
         total += out
     system.flows |= sky_terms
     system.flows["surroundings"] = total - sky_terms["skin"] - sky_terms["through"]
 
 
 def _sum(weights: Floats, values: Floats) -> Floats:
-    """Sum over bands of weights x values."""
-    return np.asarray(np.einsum("bn,bn->n", np.broadcast_to(weights, values.shape), values))
+    """Sum over bands of weights x values; weights alike in all hours are one row."""
+    if weights.shape[1] == 1:
+        return np.asarray(weights[:, 0] @ values)
+    return np.asarray(np.einsum("bn,bn->n", weights, values))
 
 
 def gains_and_stores(c: Context) -> None:

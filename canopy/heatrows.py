@@ -34,6 +34,7 @@ class State:
     film: Floats
     modes: Floats  # (M, N) at the end of each step
     drive: Floats  # (N,) T*
+    history: Floats  # (N,) W/m2, what the modes before recall
 
 
 @dataclass(frozen=True)
@@ -55,7 +56,7 @@ def past(model: Model, state: State) -> Past:
     return Past(
         {k: model.order.before(state.unknown[k]) for k in model.index.stores},
         model.order.before(state.film) * keep,
-        (model.soil.recall @ model.order.before(state.modes)) * keep,
+        state.history,
     )
 
 

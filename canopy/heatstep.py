@@ -24,11 +24,11 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 FILM_LAPS: Final = 2  # of the film through the record in each pass
-FAR_W_M2: Final = 0.3  # an hour that is open by more is first solved by itself, if there are not too many
+FAR_W_M2: Final = 1.0  # an hour that is open by more is first solved by itself, if there are not too many
 FAR_FEW_W_M2: Final = 0.02  # the same when few hours still move
 FAR_FEW: Final = 50  # hours that may use every start of the other route
-FAR_SHARE: Final = 0.4
-NEAR_W_M2: Final = 1e-3
+FAR_SHARE: Final = 0.2
+NEAR_W_M2: Final = 0.05
 FAR_TRIES: Final = 12
 LARGEST_STEP_K: Final = 8.0
 LARGEST_STEP_PA: Final = 800.0
@@ -266,7 +266,8 @@ def set_soil(model: Model, state: State) -> None:
     """Bring modes and floor temperature in line with the film temperature T*."""
     soil, start = model.soil, model.soil_start
     state.modes = run_modes(model, state.drive)
-    history = (soil.recall @ model.order.before(state.modes)) * (1.0 - start)
+    history = model.order.before(soil.recall @ state.modes) * (1.0 - start)
+    state.history = history
     steady = float(np.sum(soil.recall * soil.drive / (1.0 - soil.keep)))
     steady_deep = float(np.sum(soil.recall * soil.deep / (1.0 - soil.keep)))
     flux = (soil.conductance - start * steady) * state.drive - history

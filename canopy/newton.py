@@ -29,6 +29,7 @@ class System:
         """Start with no flow anywhere."""
         self.size = size
         self.hours = hours
+        self.shape = (hours,)
         self.residual: list[Floats] = [np.zeros(hours) for _ in range(size)]
         self.slope: list[list[Entry]] = [[None] * columns for _ in range(size)]
         self.flows: dict[str, Floats] = {}
@@ -37,7 +38,7 @@ class System:
         """Add to A[row][column]."""
         entry = self.slope[row][column]
         if entry is None:
-            self.slope[row][column] = np.broadcast_to(value, (self.hours,)).copy()
+            self.slope[row][column] = value.copy() if value.shape == self.shape else np.full(self.hours, value)
         else:
             entry += value
 
@@ -45,7 +46,7 @@ class System:
         """Subtract from A[row][column]."""
         entry = self.slope[row][column]
         if entry is None:
-            self.slope[row][column] = np.broadcast_to(-value, (self.hours,)).copy()
+            self.slope[row][column] = -value if value.shape == self.shape else np.full(self.hours, -value)
         else:
             entry -= value
 
@@ -64,7 +65,7 @@ class System:
                 self.take_slope(sink, column, slope)
         if name:
             old = self.flows.get(name)
-            self.flows[name] = np.array(np.broadcast_to(value, (self.hours,))) if old is None else old + value
+            self.flows[name] = value + 0.0 if old is None else old + value
 
     def chain(self, column: int, slopes: list[tuple[int, Floats]]) -> None:
         """Replace an auxiliary column by what it depends on."""

@@ -301,7 +301,7 @@ hours = st.fixed_dictionaries(
 )
 
 
-@settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@settings(max_examples=40, deadline=None, derandomize=True, suppress_health_check=[HealthCheck.too_slow])
 @given(hours)
 def test_random_days_close(day: dict) -> None:  # type: ignore[type-arg]
     clock = np.arange(24)
