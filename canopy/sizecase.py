@@ -89,7 +89,9 @@ def size_candidate(
         finite = rerun(case, result, weather.time, found.boiler_w_m2, solver)
     said = found.explained
     if finite is not None:
-        words = boiler_words(found.boiler_kw, finite.deficit_h, finite.lowest_air_c, finite.lowest_at)
+        words = boiler_words(
+            found.boiler_kw, finite.deficit_h, finite.lowest_air_c, finite.lowest_at, found.pipes_short_h
+        )
         said = (*said, words)
     used = _energy(heating, result, shared, found, area)
     return replace(found, finite=finite, energy=used, explained=said), night

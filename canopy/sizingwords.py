@@ -63,7 +63,7 @@ def explain(told: Told) -> tuple[str, ...]:
         said.append("The record is a typical year: its extremes are removed, a colder year is not in it.")
     if told.years < WHOLE_YEAR_SHARE:
         said.append(f"The record is {told.years:.2f} years long: percentiles are scaled to its length.")
-    if told.capped:
+    if told.capped and told.load[peak] > 0.0:
         said.append("The study limits the heating: simulated loads are cut off at that limit.")
     if told.night is not None:
         said += _night(told.night)
@@ -80,7 +80,11 @@ def explain(told: Told) -> tuple[str, ...]:
             f"In {hours_words(told.pipes_short_h)} the pipes at their highest flow temperature cannot hold "
             "the set-point: simulated loads are cut off there; more pipe or hotter water is needed."
         )
-    said.append(f"The design heat is taken from: {told.basis}.")
+    said.append(
+        "There is no design heat."
+        if told.basis == "none"
+        else f"The design heat is taken from: {told.basis}."
+    )
     return tuple(said)
 
 
@@ -134,7 +138,7 @@ def _opening(told: Told) -> list[str]:
         return []
     count = max(1, round(EXCEEDED_99_6_H / YEAR_H * len(told.load)))
     highest = np.argsort(told.load, kind="stable")[::-1][:count]
-    pulses = int(np.count_nonzero(told.opening[highest]))
+    pulses = int(np.count_nonzero(told.opening[highest] & (told.load[highest] > 0.0)))
     if pulses == 0:
         return []
     of, step_h = count * told.step_s / S_PER_H, told.step_s / S_PER_H
@@ -145,12 +149,15 @@ def _opening(told: Told) -> list[str]:
     ]
 
 
-def boiler_words(boiler_kw: float, deficit_h: float, lowest_air_c: float, at: np.datetime64) -> str:
+def boiler_words(
+    boiler_kw: float, deficit_h: float, lowest_air_c: float, at: np.datetime64, pipes_short_h: float = 0.0
+) -> str:
     """Return in words what the proposed boiler does in the record."""
     with_it = f"With the proposed {boiler_kw:.0f} kW the house"
     if deficit_h == 0.0:
         return f"{with_it} holds its set-point in every hour of this record."
+    pipes = ", for want of pipe and not of boiler" if deficit_h <= pipes_short_h else ""
     return (
-        f"{with_it} stays more than .1 K below its set-point in {hours_words(deficit_h)} of this record; "
-        f"the lowest air temperature is {lowest_air_c:.1f} °C ({hour_words(at)})."
+        f"{with_it} stays more than .1 K below its set-point in {hours_words(deficit_h)} of this "
+        f"record{pipes}; the lowest air temperature is {lowest_air_c:.1f} °C ({hour_words(at)})."
     )

@@ -117,5 +117,6 @@ class Display:
         return number(float(self.convert(value, kind)), self.unit(kind).digits + more)
 
     def say(self, value: float, kind: str, more: int = 0) -> str:
-        """Return a number with its unit."""
-        return f"{self.bare(value, kind, more)}\u00a0{self.text(kind)}"
+        """Return a number with its unit; a small energy with one decimal more."""
+        small = kind == "kWh/m2" and not more and 0.0 < abs(value) < 9.95
+        return f"{self.bare(value, kind, 1 if small else more)}\u00a0{self.text(kind)}"

@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any, Final
 
+from pydantic import BaseModel
+
 from canopy.seasonal import Seasonal
 from reports.sentences import listed
 
@@ -33,6 +35,15 @@ KEY_WORDS: Final = {
     "house.wall_covering": "covering of the walls",
     "house.gable_covering": "covering of the gables",
     "house.paint": "shading paint",
+    "crop.leaf_area_index": "leaf area",
+    "crop.height": "height of the crop",
+    "climate.heat_day": "heating by day, °C,",
+    "climate.heat_night": "heating by night, °C,",
+    "climate.vent_at": "vents from, °C,",
+    "climate.humidity_max_pct": "humidity limit, %,",
+    "heating.capacity_w_m2": "limit of the heating, W/m²,",
+    "heating.pipe_m_per_m2": "pipe per floor, m/m²,",
+    "heating.flow_max_c": "hottest water, °C,",
 }
 
 
@@ -67,6 +78,8 @@ def value_words(value: Any, key: str = "") -> str:
         return f"{value:g}"
     if value is None:
         return ABSENT.get(key, "none")
+    if isinstance(value, BaseModel):
+        return ", ".join(f"{name} {value_words(v)}" for name, v in value if v not in (None, ""))
     if isinstance(value, list):
         return f"{len(value)} entries" if value else "none"
     return str(value)

@@ -10,7 +10,7 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
         "Read as it is labelled, shifted to where the radiation really stands, checked, gaps filled and "
         "marked. Missing parts are computed: diffuse from global, water vapour from humidity, clear sky "
         "from turbidity.",
-        "Jensen & Perez 2024 (continuous Erbs); Gueymard 1994; Ineichen & Perez 2002, through pvlib",
+        "Driesse, Jensen & Perez 2024 (continuous Erbs); Gueymard 1994; Ineichen & Perez 2002, through pvlib",
     ),
     (
         "Sun",
@@ -19,40 +19,51 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
     ),
     (
         "Sunlight by band",
-        "A clear-sky spectrum by air mass and water vapour, corrected for cloud, split into UV, PAR, "
-        "far-red and two bands of NIR; photons from the same spectrum.",
-        "Bird & Riordan 1986 (SPECTRL2), through pvlib",
+        "Clear-sky spectra from a table by height of the sun and water vapour, shifted by cloud, split into "
+        "UV, PAR, far-red and two bands of NIR; photons from the same spectra.",
+        "Bird & Riordan 1986 (SPECTRL2), tabled in advance and shipped",
     ),
     (
         "Sky long-wave",
         "Where the file has none: clear-sky emissivity with a daily wave, raised by cloud as the sun tells "
-        "it and blended through the night. Split into the atmospheric window (8–14 µm) and the rest.",
+        "it and blended through the night. Split into the atmospheric window (8–14 µm) and the rest on "
+        "both sides of it: three bands.",
         "Prata 1996; Crawford & Duchon 1999; Berdahl & Fromberg 1982",
     ),
     (
         "Covering",
         "Each sheet by Fresnel's laws and absorption with all inner reflections, both polarisations apart; "
         "layers added up; dry and with a wet inner face. Beam angle by angle, diffuse light over the "
-        "half-sphere.",
+        "half-sphere. Dirt by month takes light and warms the outermost layer.",
         "Stokes 1862; Byrnes 2016; optical constants as named with each covering",
     ),
     (
         "House",
-        "The beam is followed exactly through roofs, walls and gables with the first mirror reflection; "
-        "gutters and ridges are boxes with depth, bars shade by angle; the sky is integrated over the "
-        "half-sphere, brighter round the sun and at the horizon.",
+        "The beam is followed through roofs, walls and gables, straight and with the first mirror "
+        "reflection; gutters and ridges are boxes with depth, bars shade by angle; the sky is integrated "
+        "over the half-sphere, brighter round the sun and at the horizon. Left out: second mirror "
+        "reflections. Light is taken on a level plane at the top of the crop; under an arch, at most as "
+        "high as its gutter.",
         "plane geometry; Perez et al. 1990",
     ),
     (
         "Crop",
-        "Leaves that scatter, band by band, by discrete ordinates; leaf angles by an ellipsoid; sunlit and "
-        "shaded leaves apart; light passes to and fro between leaves, floor and covering until it is "
-        "absorbed or out.",
+        "Leaves that scatter, band by band, by discrete ordinates; leaf angles by an ellipsoid; rows by "
+        "their exact gaps; sunlit and shaded leaves apart; light passes to and fro between leaves, floor, "
+        "screens and covering until it is absorbed or out.",
         "Campbell 1986 and 1990; Ross 1981; Stamnes & Swanson 1981",
     ),
     (
+        "Screens",
+        "Drawn by rules that look at the outside only: light, temperature, hours and days. A drawn screen "
+        "lies under the whole roof; side walls and gable ends stay free of it against heat loss unless "
+        "screened_walls is set. Air above it is colder and drier; it opens a gap for humidity.",
+        "strips and holes of the fabric, area by area",
+    ),
+    (
         "Long-wave inside",
-        "Floor, pipes, leaves, screens, covering layers and sky exchange in three bands, each surface "
+        "Floor, pipes, leaves, screens, covering layers and sky exchange in three bands (up to 8, 8–14 and "
+        "above 14 µm), each surface "
         "emitting at its own temperature, with transmission and reflection of every layer and all "
         "inter-reflections.",
         "Planck's law (Chang & Rhee 1984); adding method",
@@ -61,7 +72,8 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
         "Convection and air",
         "Outer and inner convection by form of the house, gaps between layers, leakage and vents by wind "
         "and temperature difference.",
-        "Bot 1983; De Zwart 1996; Frangoudakis & Kyritsis 1992; Boulard & Baille 1995; EN 673",
+        "Bot 1983; De Zwart 1996; Papadakis, Frangoudakis & Kyritsis 1992; Boulard & Baille 1995; ASHRAE "
+        "Fundamentals (leakage); EN 673",
     ),
     (
         "Water",
@@ -72,13 +84,16 @@ METHOD: Final[tuple[tuple[str, str, str], ...]] = (
     (
         "Stores and solving",
         "Air, vapour, crop, pipes, covering and a soil column store heat. All hours are solved together "
-        "until each closes; an hour that does not is solved again by another route.",
+        "until each closes; an hour that does not is solved again by another route, and a run with an hour "
+        "left open ends without a report.",
         "Newton's method; Kusuda & Achenbach 1965 for the deep ground",
     ),
     (
         "Heating size",
-        "From the hours in order of size, and as a design night worked out step by step; a paper "
-        "calculation with U-values stands beside it.",
+        "From the hours in order of size, and as a design night worked out step by step, the larger of both; "
+        "a paper calculation with U-values stands beside it. A screen that opens at once makes a pulse in "
+        "the load, which the size does not count. The smallest boiler beside a heat store is exact for a "
+        "year known in advance.",
         "ASHRAE Fundamentals ch. 14; EN 673; Dinkelbach 1967 for the heat store",
     ),
 )

@@ -24,8 +24,8 @@ DIRTY: Final = (
     "house with a clean covering."
 )
 UNLIKE: Final = (
-    "Not every candidate stands on the same house. Where it does not, part of the difference in light, "
-    "leakage and heat belongs to the house and not to the covering:"
+    "Not every candidate has the same house, crop, climate and heating. Where they differ, part of the "
+    "difference in light, leakage and heat comes from there and not from the covering:"
 )
 
 

@@ -12,7 +12,7 @@ from reports.blocks import Chooser, Figure, Row, Section, Table, Text
 from reports.display import Display, percent
 from reports.figures import SKIN, THROUGH, marks_of
 from reports.figures_heat import night_specs
-from reports.nights import NightPattern, find_nights, night_pattern
+from reports.nights import LEAST_NIGHTS, NightPattern, find_nights, night_pattern
 from reports.summary import Summary
 
 
@@ -89,7 +89,7 @@ def _night_words(
             f"{percent(patterns[low].through_share)} straight through."
         )
     clear, cloudy = patterns[high].clear_mean, patterns[high].cloudy_mean
-    if np.isfinite(clear) and np.isfinite(cloudy):
+    if len(run.days) >= LEAST_NIGHTS and np.isfinite(clear) and np.isfinite(cloudy):
         lines.append(
             f"On the clearest third of nights the sky takes {show.say(clear, 'W/m2')} from "
             f"{rows[high].name}, on the cloudiest third {show.say(cloudy, 'W/m2')}."

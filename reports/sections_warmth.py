@@ -36,7 +36,7 @@ def heat(run: Run, rows: Sequence[Summary], show: Display) -> Section:
 def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     base, lines = rows[0], []
     by_month = run.candidates[0].monthly["heat_delivered_kwh_m2"]
-    if by_month.sum() > 0:
+    if base.heat_kwh > 0 and len(by_month) > 1:
         at = int(np.argmax(by_month))
         month = say.MONTHS[int(run.months[at][5:7]) - 1]
         most = float(by_month[at])

@@ -151,7 +151,7 @@ def trades(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
     for one, candidate in zip(rows[1:], run.candidates[1:], strict=True):
         dark = f" ({change(one.dark_inside_mol, base.dark_inside_mol, 'light')} in {dark_words(run)})"
         text = (
-            f"Against {base.name}, {one.name} takes {_heat_change(one, base, show)} and gives the crop "
+            f"{one.name} against {base.name}: {_heat_change(one, base, show)}, and for the crop "
             f"{change(one.inside_mol, base.inside_mol, 'light')}{'' if dark_months(run).all() else dark}"
         )
         if max(one.peak_w, base.peak_w) > 0:

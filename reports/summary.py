@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from canopy.bands import SOLAR
 from canopy.energy import Energy
 from canopy.ledger import season
+from canopy.loadcurve import heating_only
 from canopy.run import CandidateRun, Run
 from canopy.soiling import dirt_left
 from reports.csvtables import mean_dli
@@ -98,7 +99,7 @@ def notes_of(run: Run) -> tuple[str, ...]:
 def summarise(run: Run, one: CandidateRun) -> Summary:
     """Return the numbers of one candidate."""
     total = season(one.hourly, run.weather.step_s)
-    load = one.hourly["heat_delivered_w_m2"]
+    load = heating_only(one.hourly["heat_delivered_w_m2"])
     dark = dark_months(run)
     days = run.days.astype("datetime64[M]").astype(str)
     inside = one.daily["inside_par_mol_m2"]
@@ -109,7 +110,7 @@ def summarise(run: Run, one: CandidateRun) -> Summary:
     return Summary(
         name=one.plan.name,
         total=total,
-        heat_kwh=total["heat_delivered_kwh_m2"],
+        heat_kwh=total["heat_delivered_kwh_m2"] if load.any() else 0.0,
         peak_w=float(load.max()),
         peak_at=run.time[int(load.argmax())],
         outside_mol=total["outside_par_mol_m2"],

@@ -14,6 +14,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from canopy.columns import LOSSES, STORES
+from canopy.energykeys import HeatPumpKeys
 from canopy.ledger import by_group, groups, season
 from canopy.optics import Screen
 from canopy.run import Run
@@ -38,7 +39,7 @@ from reports.figures import (
 from reports.figures_climate import AIR_OUT, HUMID, INSIDE, MEAN
 from reports.figures_crop import SHADED, SUNLIT
 from reports.figures_heat import FLOWS
-from reports.keywords import difference_words
+from reports.keywords import difference_words, value_words
 from reports.nights import find_nights, night_pattern
 from reports.page import sections_of
 from reports.ranges import covering_ranges
@@ -332,7 +333,9 @@ def test_equal_candidates_are_called_equal() -> None:
     run = make_run(ALIKE)
     rows, show = summaries(run), Display("si")
     assert all(line.startswith("All candidates") for line in say.answer(run, rows, show))
-    assert say.trades(run, rows, show)[0].startswith("Against c0, c1 takes the same heat and gives the crop ")
+    assert say.trades(run, rows, show)[0].startswith(
+        "c1 against c0: the same heat, and for the crop the same light"
+    )
     assert len(say.verdicts(rows)) == 1
     texts = [text for section in sections_of(run) for text in _texts(section.blocks)]
     assert "All candidates take the same heat as c0." in texts
@@ -418,3 +421,31 @@ def test_a_library_covering_in_use_keeps_its_ranges(run: Run) -> None:
     own = keys.covering[0].model_copy(update={"u_value": 5.0})
     study = replace(quoted.study, keys=keys.model_copy(update={"covering": [own]}))
     assert covering_ranges(replace(quoted, study=study)) == {}
+
+
+def test_crumbs_of_the_solver_are_no_heat() -> None:
+    run = make_run(fakes(2), heated=False)
+    crumbs = tuple(
+        replace(
+            one,
+            hourly={**one.hourly, "heat_delivered_w_m2": np.full(len(run.time), 1e-6 * (at + 1))},
+            monthly={**one.monthly, "heat_delivered_kwh_m2": np.full(len(run.months), 1e-8)},
+        )
+        for at, one in enumerate(run.candidates)
+    )
+    run = replace(run, candidates=crumbs)
+    rows = summaries(run)
+    assert [(r.heat_kwh, r.peak_w) for r in rows] == [(0.0, 0.0)] * 2
+    assert say.answer(run, rows, Display("si"))[0] == "No candidate takes heat: temperatures float."
+    assert "takes the most heat" not in " ".join(_texts(sections_of(run)[2].blocks))
+
+
+def test_values_of_tables_are_written_out() -> None:
+    pump = HeatPumpKeys(source="air", capacity_w_m2=60.0)
+    words = value_words(pump, "heating.heat_pump")
+    assert words.startswith("source air, capacity_w_m2 60")
+    assert "None" not in words
+    assert value_words(None, "heating.capacity_w_m2") == "no limit"
+    assert value_words(None, "heating.heat_pump") == value_words([], "house.paint") == "none"
+    assert Display("si").say(1.44, "kWh/m2") == "1.4\u00a0kWh/m²"
+    assert Display("si").say(14.4, "kWh/m2") == "14\u00a0kWh/m²"
