@@ -3,7 +3,7 @@
 The regime needs no guessing. With v the opening (screen gap first, then vents) and Q the heat given to the
 pipe water, the two control rows are
 
-    heating   max( min(k (T_air - T_heat), T_pipe - T_min, Q), Q - Q_max, T_pipe - T_flow,max ) = 0
+    heating   max( min(k (T_air - T_heat), T_pipe - T_min, Q), Q - Q_max, min(T_pipe - T_flow,max, Q) ) = 0
     venting   max( min(k1 (T_vent - T_air), k2 (e_max - e), k3 v), k3 (v - v_max) ) = 0
 
 Each is a rising function of its own lever, so that heating, its limit, floating, venting for heat or for
@@ -48,6 +48,9 @@ VAPOUR_WEIGHT: Final = 0.01  # K per Pa above the humidity limit
 HUMID_VENT_MAX: Final = 0.3  # vents open no further than this for humidity; common practice
 PAST_KINK: Final = 0.004  # opening beyond a kink that a step may reach: the row then shows its other side
 OUTSIDE_REACH: Final = 1.05  # venting for humidity aims no lower than this share of the outside vapour
+LOWEST_C: Final = -90.0  # unknowns are kept in the range where the formulas mean something
+HIGHEST_C: Final = 130.0
+HIGHEST_PA: Final = 60000.0
 GIVE_WAY_K: Final = 0.5  # humidity venting gives way when the heating cannot hold the air this near
 
 
@@ -183,10 +186,11 @@ def pipe_row(c: Context) -> None:
     low = np.minimum(np.minimum(warm, least), heat)
     over = heat - heating.capacity_w_m2
     hot = PIPE_WEIGHT * (c.u[pipe] - heating.flow_max_c)
-    high = np.maximum(over, hot)
+    hot = np.where(heat <= hot, np.inf, hot)  # a house hotter than the flow may be: no heat, but no cooling
+    high = np.maximum(over, np.minimum(hot, heat))
     value = np.maximum(low, high)
     top = high > low
-    by_heat = (np.where(top, over >= hot, (heat <= warm) & (heat <= least))).astype(float)
+    by_heat = (np.where(top, (over >= hot) | np.isinf(hot), (heat <= warm) & (heat <= least))).astype(float)
     by_air = np.where(top | (by_heat > 0.0), 0.0, HEAT_WEIGHT * (warm <= least))
     by_pipe = np.where(by_heat > 0.0, 0.0, np.where(top, PIPE_WEIGHT, PIPE_WEIGHT * (warm > least)))
     system.residual[pipe] = -value

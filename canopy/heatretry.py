@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from canopy.heatindex import Index
 from canopy.heatmodel import Model
-from canopy.heatregime import PAST_KINK, evaluate, vent_reach
+from canopy.heatregime import HIGHEST_C, HIGHEST_PA, LOWEST_C, PAST_KINK, evaluate, vent_reach
 from canopy.heatrows import Context, Past
 from canopy.newton import Entry, eliminate
 
@@ -163,5 +163,5 @@ def _held(model: Model, k: int, value: Floats) -> Floats:
     if k == ix.vent:
         return np.clip(value, -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
     if k == ix.air0_vapour or k < ix.screens:
-        return np.clip(value, 1.0, 9000.0)
-    return np.clip(value, -80.0, 110.0)
+        return np.clip(value, 1.0, HIGHEST_PA)
+    return np.clip(value, LOWEST_C, HIGHEST_C)

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from canopy import vapour as vp
 from canopy.heatmodel import Model
-from canopy.heatregime import PAST_KINK, evaluate, vent_reach
+from canopy.heatregime import HIGHEST_C, LOWEST_C, PAST_KINK, evaluate, vent_reach
 from canopy.heatretry import alone, descend
 from canopy.heatrows import FILM, HISTORY, SPEED, Context, Past, State, past, soil_line
 from canopy.march import Response, march, run_film, run_modes
@@ -255,7 +255,7 @@ def keep_in_range(model: Model, state: State, vapours: set[int]) -> None:
         if k == ix.vent:
             u[k] = np.clip(u[k], -PAST_KINK, model.gap_max + model.vent_max + PAST_KINK)
         elif k not in vapours:
-            u[k] = np.clip(u[k], -80.0, 110.0)
+            u[k] = np.clip(u[k], LOWEST_C, HIGHEST_C)
     for space in range(ix.screens + 1):
         full = SATURATED * vp.saturation(u[ix.air(space)])[0]
         u[ix.vapour(space)] = np.clip(u[ix.vapour(space)], 1.0, full)
