@@ -60,7 +60,7 @@ def explain(told: Told) -> tuple[str, ...]:
             f"35 h a year {told.exceeded[0]:.0f}, in 88 h {told.exceeded[1]:.0f} W/m2."
         ]
     if told.typical:
-        said.append("The record is a typical year: its extremes are removed, a colder year is not in it.")
+        said.append("The record is no measured year: extremes are not in it, a colder year neither.")
     if told.years < WHOLE_YEAR_SHARE:
         said.append(f"The record is {told.years:.2f} years long: percentiles are scaled to its length.")
     if told.capped and told.load[peak] > 0.0:

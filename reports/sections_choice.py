@@ -37,7 +37,7 @@ def which(run: Run, rows: Sequence[Summary], show: Display) -> Section:
         blocks.append(trade_figure(run, rows, show))
         blocks.append(Points((*say.trades(run, rows, show), *say.verdicts(rows))))
     blocks += covering_and_house(run, rows, show)
-    notes = say.doubts(run)
+    notes = say.doubts(run, rows)
     if notes:
         blocks.append(Points(notes))
     return Section("which", "The choice", "Which covering gives what, and costs what?", tuple(blocks))
@@ -136,7 +136,8 @@ def light(run: Run, rows: Sequence[Summary], show: Display) -> Section:
     inside = [mean_dli(run, one)[1] for one in run.candidates]
     best, worst = int(np.argmin(outside)), int(np.argmax(outside))
     months = [say.MONTHS[int(m[5:7]) - 1] for m in run.months]
-    most = "" if best == worst else f" and {number(outside[worst], 1)} in {months[worst]}"
+    alike = number(outside[best], 1) == number(outside[worst], 1)
+    most = "" if alike else f" and {number(outside[worst], 1)} in {months[worst]}"
     lead = [f"Outside, the mean day brings {number(outside[best], 1)} mol/m² of PAR in {months[best]}{most}."]
     at_best = [values[best] for values in inside]
     top, low = int(np.argmax(at_best)), int(np.argmin(at_best))

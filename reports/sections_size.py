@@ -115,10 +115,9 @@ def _lead(run: Run, rows: Sequence[Summary], show: Display) -> tuple[str, ...]:
         )
     if len(run.hours) < len(run.weather):
         lines.append("Sizes are taken from the whole weather record, not only from the season reported.")
-    if run.weather.typical:
-        lines.append(
-            "The weather is a typical year: its extremes are removed, so its largest hour alone is no size."
-        )
+    if run.weather.typical or run.weather.clear_sky:
+        kind = "computed clear-sky" if run.weather.clear_sky else "typical"
+        lines.append(f"The weather is a {kind} year without extremes: its largest hour alone is no size.")
     return tuple(lines)
 
 

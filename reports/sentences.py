@@ -20,6 +20,7 @@ MONTHS: Final = (
 
 SAME: Final = 0.005  # differences below half a per cent are not told apart in words
 
+SHORT_H: Final = 10.0  # hours below the set-point from which on a total of heat is called short
 DARK: Final = "No sunlight falls in the reported season"
 
 
@@ -201,15 +202,23 @@ def verdicts(rows: Sequence[Summary]) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def doubts(run: Run) -> tuple[str, ...]:
+def doubts(run: Run, rows: Sequence[Summary]) -> tuple[str, ...]:
     """Return how far the figures may be trusted, as far as that is known from the run itself."""
     weather, lines = run.weather, []
+    short = [r for r in rows if r.total["below_setpoint_h"] >= SHORT_H]
+    if short:
+        most = count(max(r.total["below_setpoint_h"] for r in short), "hour", "hours")
+        lines.append(
+            f"With {listed([r.name for r in short])} the heating cannot hold the set-point, in up to {most}: "
+            "the heat delivered is less than asked for, and comparisons of heat say less than they seem to. "
+            "See heating size."
+        )
     if weather.clear_sky:
         lines.append(
             "The weather is a computed clear-sky record: light is an upper bound, and nights are colder for "
             "the roof than real ones."
         )
-    if weather.typical:
+    elif weather.typical:
         lines.append(
             "The weather is a typical year: months from different years, the extremes removed. Season "
             "totals are ordinary ones; the largest hour is not a sizing figure."

@@ -449,3 +449,18 @@ def test_values_of_tables_are_written_out() -> None:
     assert value_words(None, "heating.heat_pump") == value_words([], "house.paint") == "none"
     assert Display("si").say(1.44, "kWh/m2") == "1.4\u00a0kWh/m²"
     assert Display("si").say(14.4, "kWh/m2") == "14\u00a0kWh/m²"
+
+
+def test_a_house_that_is_not_kept_warm_is_named(run: Run) -> None:
+    rows = summaries(run)
+    assert not any("cannot hold" in line for line in say.doubts(run, rows))
+    cold = replace(rows[1], total={**rows[1].total, "below_setpoint_h": 272.0})
+    line = say.doubts(run, (rows[0], cold))[0]
+    assert line.startswith(f"With {cold.name} the heating cannot hold the set-point, in up to 272 hours")
+
+
+def test_a_computed_year_is_not_called_typical(run: Run) -> None:
+    clear = replace(run, weather=replace(run.weather, clear_sky=True))  # both marks stand on such a year
+    words = " ".join(say.doubts(clear, summaries(clear)))
+    assert "clear-sky record" in words
+    assert "typical" not in words

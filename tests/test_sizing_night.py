@@ -240,7 +240,7 @@ def test_sizing_of_the_hours() -> None:
     assert sizing.boiler_kw == pytest.approx(1.15 * design * 4.8)
     assert sizing.full_load_hours == pytest.approx(heat.sum() / design)
     said = " ".join(sizing.explained)
-    assert "extremes are removed" in said
+    assert "no measured year" in said
     assert "percentiles are scaled" in said
 
 
