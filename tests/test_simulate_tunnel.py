@@ -63,7 +63,7 @@ def test_a_tunnel_runs_through(run: Run, tunnel: CandidateRun) -> None:
     for name, values in tunnel.hourly.items():
         if name != "heat_at_c":  # an unheated house has no heating set-point
             assert np.isfinite(values).all(), name
-    assert not tunnel.hourly["heat_delivered_w_m2"].any()
+    assert tunnel.hourly["heat_delivered_w_m2"].max() < 1e-3
     inside, outside = (tunnel.hourly[f"{side}_par_umol_m2_s"].sum() for side in ("inside", "outside"))
     # film tunnels: 70-80 % of the light outside is common practice, new and clean up to 85 %
     assert 0.65 < inside / outside < 0.90
