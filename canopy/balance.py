@@ -129,8 +129,9 @@ def _run_film(model: Model, state: State, part: Context, at: NDArray[np.int64]) 
     Newton passes hand the film on by one chunk each; a film that gains a little every day would take as many
     passes as days to fill.
     """
-    inflow = evaluate(model, state.unknown, past(model, state)).inflow
-    inflow[at] = part.inflow
+    whole = evaluate(model, state.unknown, past(model, state))
+    inflow = np.array([whole.film_gain, whole.film_loss])
+    inflow[:, at] = part.film_gain, part.film_loss
     state.film = run_film(model, state.film, inflow, FILM_LAPS)
 
 

@@ -24,7 +24,8 @@ from canopy.emitters import pipe_convection
 from canopy.heatmodel import Model
 from canopy.heatrows import (
     FILM,
-    INFLOW,
+    GAIN,
+    LOSS,
     SPEED,
     WET,
     Context,
@@ -67,7 +68,8 @@ def evaluate(model: Model, unknown: list[Floats], gone: Past) -> Context:
     fog(c)
     n = c.n
     c.system.chain(n + WET, [(n + FILM, (c.film_before < vp.FILM_FULL_KG_M2) / vp.FILM_FULL_KG_M2)])
-    c.system.chain(n + INFLOW, c.inflow_slopes)
+    c.system.chain(n + GAIN, c.gain_slopes)
+    c.system.chain(n + LOSS, c.loss_slopes)
     c.system.chain(n + SPEED, c.speed_slopes)
     pipe_row(c)
     vent_row(c)

@@ -21,9 +21,10 @@ from weather.constants import CP_AIR, CP_WATER
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-WET, INFLOW, SPEED, FILM, HISTORY = range(5)
-"""Columns behind the unknowns: wet share, film inflow, squared air speed, film before, soil history."""
-AUXILIARY = 5
+WET, GAIN, LOSS, SPEED, FILM, HISTORY = range(6)
+"""Columns behind the unknowns: wet share, what the film gains and loses, squared air speed, film before, soil
+history."""
+AUXILIARY = 6
 
 
 @dataclass
@@ -76,9 +77,10 @@ class Context:
         self.ratio = [vp.mixing_ratio(unknown[ix.vapour(k)], model.pressure) for k in spaces]
         self.before, self.film_before, self.history = gone.before, gone.film, gone.history
         self.wet = np.minimum(self.film_before / vp.FILM_FULL_KG_M2, 1.0)
-        self.film_after = self.inflow = self.speed = np.empty(0)
+        self.film_after = self.film_gain = self.film_loss = self.speed = np.empty(0)
         self.film_slopes = (np.empty(0), np.empty(0))
-        self.inflow_slopes: list[tuple[int, Floats]] = []
+        self.gain_slopes: list[tuple[int, Floats]] = []
+        self.loss_slopes: list[tuple[int, Floats]] = []
         self.speed_slopes: list[tuple[int, Floats]] = []
         self.pipe_keeps = np.empty(0)
         self.at_limit = self.humid = np.empty(0, dtype=bool)
@@ -186,12 +188,15 @@ def _face(c: Context, space: int, share: float, forced: Floats, by_speed: Floats
 
 
 def _condense(c: Context, faces: list[_Face]) -> None:
-    """Vapour against the inner face (Lewis), the film that it leaves, and what runs off."""
+    """Vapour against the inner face (Lewis), the film that it leaves, and what runs off.
+
+    One film serves all parts of the face. A part that collects takes up all; one that gives off does so by
+    the film's wet share, after what the others brought.
+    """
     m, ix = c.model, c.ix
     last = ix.cover(ix.layers - 1)
-    inflow = np.zeros(m.hours)
+    gain, loss = np.zeros(m.hours), np.zeros(m.hours)
     parts = []
-    c.inflow_slopes = []
     for face in faces:
         air, vapour = ix.air(face.space), ix.vapour(face.space)
         unit = face.share * m.lewis * (m.step_s / vp.LATENT_HEAT)
@@ -203,26 +208,30 @@ def _condense(c: Context, faces: list[_Face]) -> None:
             (last, -unit * face.h * c.saturation[last][1] - by_heat),
             (c.n + SPEED, unit * excess * face.by_speed),
         ]
-        value = unit * face.h * excess
-        inflow += value
-        parts.append((vapour, value, slopes))
-        c.inflow_slopes += slopes
-    c.inflow = inflow
-    film, _, over, by_before, by_inflow = vp.film_step(c.film_before, inflow)
-    taken, by_before_taken, by_inflow_taken = vp.film_share(c.film_before, inflow)
+        value, on = unit * face.h * excess, excess >= 0.0
+        gain += np.where(on, value, 0.0)
+        loss += np.where(on, 0.0, value)
+        c.gain_slopes += [(column, np.where(on, slope, 0.0)) for column, slope in slopes]
+        c.loss_slopes += [(column, np.where(on, 0.0, slope)) for column, slope in slopes]
+        parts.append((vapour, value, on, slopes))
+    c.film_gain, c.film_loss = gain, loss
+    film, _, over, by_before, by_loss = vp.film_step(c.film_before + gain, loss)
+    share, by_before_share, by_loss_share = vp.film_share(c.film_before + gain, loss)
     per_kg = m.cover_size * vp.LATENT_HEAT / m.step_s
-    for vapour, value, slopes in parts:
+    for vapour, value, on, slopes in parts:
+        taken, dry = np.where(on, 1.0, share), np.where(on, 0.0, per_kg * value)
         by = [(column, per_kg * taken * slope) for column, slope in slopes]
-        by.append((c.n + INFLOW, per_kg * value * by_inflow_taken))
-        by.append((c.n + FILM, per_kg * value * by_before_taken))
+        by += [(c.n + column, dry * by_before_share) for column in (FILM, GAIN)]
+        by.append((c.n + LOSS, dry * by_loss_share))
         c.system.flow(per_kg * taken * value, vapour, last, by, "condense_cover")
     held = over <= 0.0
     per_k = m.cover_size * CP_WATER / m.step_s
     warm = c.u[last] - vp.REFERENCE_C
     lost = np.where(held, 0.0, per_k) * warm
-    slopes = [(last, per_k * over), (c.n + INFLOW, lost * by_inflow), (c.n + FILM, lost * by_before)]
-    c.system.flow(per_k * over * warm, last, None, slopes, "drain")
-    c.film_after, c.film_slopes = film, (by_before * held, by_inflow * held)
+    run_off = [(last, per_k * over), (c.n + LOSS, lost * by_loss)]
+    run_off += [(c.n + column, lost * by_before) for column in (FILM, GAIN)]
+    c.system.flow(per_k * over * warm, last, None, run_off, "drain")
+    c.film_after, c.film_slopes = film, (by_before * held, by_loss * held)
 
 
 def screens(c: Context) -> None:

@@ -74,29 +74,37 @@ def right_sides(model: Model, c: Context, alone: bool) -> list[list[Entry]]:
 
 def film_line(
     model: Model, film: Floats, c: Context, x: list[list[Entry]]
-) -> tuple[list[Floats], list[Floats]]:
-    """The film's own row after elimination, and that of its inflow, for every right-hand side."""
-    by_before, by_inflow = c.film_slopes
+) -> tuple[list[Floats], list[Floats], list[Floats]]:
+    """The film's own row after elimination, and those of its gain and loss, for every right-hand side."""
+    by_before, by_loss = c.film_slopes
+    gain, loss = (_answers(model, c, slopes, x) for slopes in (c.gain_slopes, c.loss_slopes))
+    out = [by_before * one + by_loss * two for one, two in zip(gain, loss, strict=True)]
+    out[0] += c.film_after - film
+    if len(out) > 1:
+        out[-1] += by_before
+    return out, gain, loss
+
+
+def _answers(
+    model: Model, c: Context, slopes: list[tuple[int, Floats]], x: list[list[Entry]]
+) -> list[Floats]:
+    """What a quantity with these slopes answers to every right-hand side."""
     totals: dict[int, Floats] = {}
-    for column, slope in c.inflow_slopes:
+    for column, slope in slopes:
         parts = [(column, slope)]
         if column == c.n + SPEED:
             parts = [(k, slope * s) for k, s in c.speed_slopes]
         for k, value in parts:
             totals[k] = totals[k] + value if k in totals else value
-    inflow = []
+    out = []
     for column in range(len(x[0])):
         value = np.zeros(model.hours)
         for k, slope in totals.items():
             entry = x[k][column]
             if entry is not None:
                 value += slope * entry
-        inflow.append(value)
-    out = [by_inflow * value for value in inflow]
-    out[0] += c.film_after - film
-    if len(out) > 1:
-        out[-1] += by_before
-    return out, inflow
+        out.append(value)
+    return out
 
 
 class Stepper:
@@ -106,11 +114,11 @@ class Stepper:
         """Keep room for the answers of every hour."""
         ix = model.index
         self.model, self.state = model, state
-        self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns, its inflow last
+        self.carried = [*ix.stores, ix.size]  # the film stands behind the unknowns, its gain and loss last
         rest = [row for row in range(ix.size) if row not in (*self.carried, ix.floor)]
-        self.rows = [*self.carried, ix.floor, *rest, ix.size + 1]  # in this order answers are kept
+        self.rows = [*self.carried, ix.floor, *rest, ix.size + 1, ix.size + 2]  # order of answers
         self.answer = np.zeros((len(self.rows), len(self.carried) + 2, model.hours))
-        self.inflow = np.zeros(model.hours)
+        self.inflow = np.zeros((2, model.hours))  # gain and loss of the film
         self.active: Ints | None = None  # None: all hours
         self.given = np.zeros(model.hours)  # see `Response.given`
 
@@ -125,11 +133,11 @@ class Stepper:
         m, ix = self.model, self.model.index
         slopes = [row[: c.n] for row in c.system.slope]
         x = eliminate(slopes, right_sides(m, c, True), vent_reach(c), m.hours)
-        film, inflow = film_line(m, self.state.film, c, x)
-        self.inflow = c.inflow
+        film, gain, loss = film_line(m, self.state.film, c, x)
+        self.inflow = np.array([c.film_gain, c.film_loss])
         steps = [np.zeros(m.hours) if row[0] is None else row[0] for row in x]
         conductance, _ = soil_line(c)
-        self._apply([*steps, film[0], inflow[0]], (1.0 + conductance / m.soil.film) * steps[ix.floor])
+        self._apply([*steps, film[0], gain[0], loss[0]], (1.0 + conductance / m.soil.film) * steps[ix.floor])
 
     def _learn(self, model: Model, film: Floats, c: Context, at: Ints | slice) -> None:
         """Keep the answers of the hours that were evaluated."""
@@ -137,7 +145,7 @@ class Stepper:
         x = eliminate(slopes, right_sides(model, c, False), vent_reach(c), model.hours)
         for line in film_line(model, film, c, x):
             x.append(list(line))
-        self.inflow[at] = c.inflow
+        self.inflow[:, at] = c.film_gain, c.film_loss
         for place, row in enumerate(self.rows):
             for j, entry in enumerate(x[row]):
                 self.answer[place, j, at] = 0.0 if entry is None else entry
@@ -213,7 +221,7 @@ class Stepper:
         self.given = np.zeros(m.hours)
         carried, recalled, drive = march(m, response)
         shifted = m.order.before(carried) * (1.0 - start)
-        steps: list[Floats] = [carried[0]] * (ix.size + 2)
+        steps: list[Floats] = [carried[0]] * (ix.size + 3)
         for place, row in enumerate(self.rows):
             if place < len(self.carried):
                 steps[row] = carried[place]
@@ -239,7 +247,7 @@ class Stepper:
         share = 1.0 / size
         for k in range(ix.size):
             s.unknown[k] = s.unknown[k] + share * steps[k]
-        self.inflow = self.inflow + share * steps[ix.size + 1]
+        self.inflow = self.inflow + share * np.array(steps[ix.size + 1 :])
         film = run_film(m, s.film, self.inflow, FILM_LAPS)
         np.maximum(moved, np.abs(film - s.film) / FILM_PER_K, out=moved)
         s.film = film

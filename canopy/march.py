@@ -48,10 +48,10 @@ def run_modes(model: Model, drive: Floats) -> Floats:
 
 
 def run_film(model: Model, film: Floats, inflow: Floats, laps: int) -> Floats:
-    """Let the film run through the record at a given uptake, `laps` times or until it repeats, (N,)."""
+    """Let the film run through the record, `laps` times or until it repeats; `inflow` (2, N) gain, loss."""
     order = model.order
-    cut = inflow.reshape(order.steps, order.chunks)
-    drying = np.minimum(cut, 0.0)
+    gain = np.maximum(inflow, 0.0).sum(axis=0).reshape(order.steps, order.chunks)
+    drying = np.minimum(inflow, 0.0).sum(axis=0).reshape(order.steps, order.chunks)
     divisor = 1.0 - drying / FILM_FULL_KG_M2
     dries = drying < 0.0
     out = film.reshape(order.steps, order.chunks).copy()
@@ -61,7 +61,8 @@ def run_film(model: Model, film: Floats, inflow: Floats, laps: int) -> Floats:
         if not model.case.periodic:
             now[0] = 0.0
         for k in range(order.steps):
-            grown = now + cut[k]
+            now = now + gain[k]
+            grown = now + drying[k]
             patchy = dries[k] & (grown < FILM_FULL_KG_M2)
             now = np.minimum(np.where(patchy, now / divisor[k], grown), FILM_MAX_KG_M2)  # `vapour.film_step`
             out[k] = now

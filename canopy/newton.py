@@ -38,7 +38,8 @@ class System:
         """Add to A[row][column]."""
         entry = self.slope[row][column]
         if entry is None:
-            self.slope[row][column] = value.copy() if value.shape == self.shape else np.full(self.hours, value)
+            full = value.shape == self.shape
+            self.slope[row][column] = value.copy() if full else np.full(self.hours, value)
         else:
             entry += value
 
