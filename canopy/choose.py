@@ -67,6 +67,8 @@ def _own_covering(keys: CoveringKeys, study: Study) -> Chosen:
         raise UserError(f'{study.label}: covering "{keys.name}": {error}') from None
     aged = f"{keys.age_years:g} years old" if keys.age_years else ""
     said = (*fitted.assumed, *fitted.contradictions, fitted.sensitivity, aged, _dirt(keys))
+    if not quote.says_anything:  # one short note
+        said = ("; ".join(filter(None, said)),)
     return Chosen(fitted.covering, keys, tuple(f"{keys.name}: {note}" for note in said if note))
 
 

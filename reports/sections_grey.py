@@ -3,17 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Final
 
 from canopy.run import Run
 from reports import sentences as say
 from reports.blocks import Row, Section, Table, Text
-from reports.display import Display, number, percent
+from reports.display import NONE, Display, number, percent
 from reports.figures import marks_of
 from reports.summary import Summary
 
+NOTHING_KWH: Final = 0.05  # kWh/m2: heat below this is none, and its share says nothing
+
 
 def _off(grey: float, banded: float) -> str:
-    return f"{'+' if grey >= banded else '−'}{percent(abs(grey / banded - 1.0), 1)}" if banded > 0 else "–"
+    if banded < NOTHING_KWH:
+        return NONE
+    return f"{'+' if grey >= banded else '−'}{percent(abs(grey / banded - 1.0), 1)}"
 
 
 def grey(run: Run, rows: Sequence[Summary], show: Display) -> Section | None:
@@ -25,13 +30,16 @@ def grey(run: Run, rows: Sequence[Summary], show: Display) -> Section | None:
     ]
     if not found:
         return None
-    worst, g, _ = max(found, key=lambda item: abs(item[1].grey_heat_kwh - item[1].heat_kwh))
+    heated = max(g.heat_kwh for _, g, _ in found) >= NOTHING_KWH
+    sides = [(g.grey_heat_kwh, g.heat_kwh) if heated else (g.grey_sky_kwh, g.sky_kwh) for _, g, _ in found]
+    at = max(range(len(found)), key=lambda k: abs(sides[k][0] - sides[k][1]))
+    (worst, _, _), (said, banded) = found[at], sides[at]
     lead = (
         "Some coverings pass long-wave radiation in some bands and stop it in others. A calculation with "
         "one mean value for all wavelengths, as U-values and plain emissivities are, gets these wrong.",
-        f"With {worst.name} one grey band would have said {show.say(g.grey_heat_kwh, 'kWh/m2')} of heat "
-        f"{say.period(run)} instead of {show.say(g.heat_kwh, 'kWh/m2')}: "
-        f"{_off(g.grey_heat_kwh, g.heat_kwh)}.",
+        f"With {worst.name} one grey band would have said {show.say(said, 'kWh/m2')} "
+        f"{'of heat' if heated else 'lost to the sky'} {say.period(run)} instead of "
+        f"{show.say(banded, 'kWh/m2')}: {_off(said, banded)}.",
     )
     energy, load = show.text("kWh/m2"), show.text("W/m2")
     table = Table(

@@ -22,9 +22,9 @@ Floats = NDArray[np.float64]
 PAR: Final = SOLAR.index("par")
 
 TOP: Final = Mark("top of the crop", "#2f86bd", "dash", "diamond")
-LEAVES: Final = Mark("absorbed by leaves, per m2 floor", "#1f3a6e", "solid", "triangle-up")
-SUNLIT: Final = Mark("per m2 of sunlit leaf", "#b98300", "solid", "circle")
-SHADED: Final = Mark("per m2 of shaded leaf", "#2f7d32", "solid", "square")
+LEAVES: Final = Mark("absorbed by leaves, per m² floor", "#1f3a6e", "solid", "triangle-up")
+SUNLIT: Final = Mark("per m² of sunlit leaf", "#b98300", "solid", "circle")
+SHADED: Final = Mark("per m² of shaded leaf", "#2f7d32", "solid", "square")
 LEAF_PAR: Final = Mark("PAR absorbed by leaves", "#2f7d32", "solid", "square")
 LEAF_NIR: Final = Mark("NIR absorbed by leaves", "#a3262a", "dash", "triangle-down")
 FLOOR: Final = Mark("absorbed by the floor", TO_GROUND.colour, "dot", "cross")

@@ -2,15 +2,21 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from canopy import library
+from canopy.choose import choose_covering
 from canopy.coveringfigures import figures
 from canopy.optics import Covering
 from canopy.quoted import MATCH, Quote, fit_quoted
+from canopy.studyfile import Study
+from canopy.studykeys import CoveringKeys
+from tests.reportcase import fakes, make_study
 from weather.errors import UserError
 
 
@@ -157,3 +163,23 @@ def test_any_quotation_keeps_the_laws_and_is_met_or_contradicted(
     ):
         misses += want is not None and abs(want - have) > MATCH
     assert (misses == 0) or len(fitted.contradictions) >= misses
+
+
+def test_a_covering_in_use_without_a_quotation_is_the_librarys() -> None:
+    base, fitted = library.covering("glass-clear-4"), fit_quoted(Quote("in use", "glass-clear-4"))
+    assert fitted.covering.title == base.title
+    assert fitted.assumed == ("as glass-clear-4 in the library",)
+    assert fitted.sensitivity == ""
+    assert fitted.contradictions == ()
+    assert fitted.covering.thermal_dry is base.thermal_dry
+    loss = [0.03] * 3 + [0.04] * 9
+    keys = CoveringKeys(name="in use", based_on="glass-clear-4", dirt_by_month=loss, wash_days=["05-01"])
+    chosen = choose_covering("in use", _study(keys))
+    assert chosen.notes == (
+        "in use: as glass-clear-4 in the library; dirt takes 3 to 4 % of the light by month, washed on 05-01",
+    )
+
+
+def _study(keys: CoveringKeys) -> Study:
+    study = make_study(fakes(1))
+    return replace(study, keys=study.keys.model_copy(update={"covering": [keys]}))
