@@ -12,6 +12,7 @@ from canopy import library
 from canopy.balance import solve
 from canopy.choose import Chosen, choose_covering, choose_leaf
 from canopy.control import SetPoints, schedule
+from canopy.finer import Finer, make_finer
 from canopy.growth import lai_series
 from canopy.heatcase import Climate, CoveringHeat, CropHeat, HeatCase, HeatResult, Outside, SolarGain
 from canopy.hourly import blend
@@ -48,6 +49,7 @@ class Place:
     civil_hour: Floats
     day_of_year: Floats
     outside: Outside
+    finer: Finer | None = None  # the record in finer bands, where the study asks for them
     paths: dict[House, Paths] = field(default_factory=dict)
     transmissions: dict[Any, tuple[HouseTransmission, HouseTransmission]] = field(default_factory=dict)
     stands: dict[Any, StandResponse] = field(default_factory=dict)
@@ -104,7 +106,8 @@ def make_place(study: Study, weather: Weather) -> Place:
         sun_up=weather.zenith < 90.0,
     )
     day = np.asarray(day_of_year(weather), float)
-    return Place(study, weather, split(weather), civil_hours(weather), day, outside)
+    finer = make_finer(study, weather)
+    return Place(study, weather, split(weather), civil_hours(weather), day, outside, finer)
 
 
 def _climate(plan: Plan, place: Place, rules: tuple[Any, ...]) -> Climate:
@@ -152,21 +155,27 @@ def _stand(plan: Plan, place: Place, leaf: Leaf, ground: Ground, lai: Floats) ->
     return place.stands[key]
 
 
-def _transmissions(plan: Plan, place: Place, house: House, chosen: Chosen) -> tuple[HouseTransmission, ...]:
-    """Return the transmission with a dry and with a wet covering."""
+def _transmissions(
+    plan: Plan, place: Place, house: House, chosen: Chosen, finer: Finer | None = None
+) -> tuple[HouseTransmission, ...]:
+    """Return the transmission with a dry and with a wet covering, in finer bands or in the usual ones."""
     keys = plan.house
     sides = (keys.wall_covering, keys.gable_covering)
-    key = (house, plan.covering, *sides)
+    key = (house, plan.covering, *sides, finer is not None)
     if key not in place.transmissions:
         paths = place.traced(house)
         left = dirt_left(chosen.keys, place.weather.time)
 
         def state(wet: bool) -> HouseTransmission:
-            def optics(one: Chosen) -> SolarOptics:
-                return one.covering.solar_wet if wet else one.covering.solar_dry
+            def optics(name: str) -> SolarOptics:
+                covering = place.chosen(name).covering
+                covering = covering if finer is None else finer.covering(name, covering)
+                return covering.solar_wet if wet else covering.solar_dry
 
-            walls, gables = (None if name is None else optics(place.chosen(name)) for name in sides)
-            return soiled(transmit(paths, optics(chosen), place.weather, walls=walls, gables=gables), left)
+            walls, gables = (None if name is None else optics(name) for name in sides)
+            return soiled(
+                transmit(paths, optics(plan.covering), place.weather, walls=walls, gables=gables), left
+            )
 
         place.transmissions[key] = state(False), state(True)
     return place.transmissions[key]
@@ -181,6 +190,14 @@ def _gain(light: Light) -> SolarGain:
         screen=light.screen.sum(1),
         air=light.structure.sum(0),
     )
+
+
+def _heat(case: HeatCase, place: Place, plan: Plan, warm: HeatResult | None) -> HeatResult:
+    finer = place.finer
+    if finer is None:
+        return solve(case, warm)
+    covering = finer.covering(plan.covering, place.chosen(plan.covering).covering)
+    return solve(finer.case(case, covering), warm, finer.thermal)
 
 
 def leaf_area(plan: Plan, place: Place) -> Floats:
@@ -207,9 +224,12 @@ def budget(plan: Plan, place: Place) -> Budget:
     paint: Paint | None = None
     if plan.house.paint:
         paint = paint_optics(paint_factor(place.weather, plan.house.paint))
+    finer, drawn = place.finer, climate.screen_drawn
     dry, wet = (
-        inside(place.sun, t, place.weather, screens, climate.screen_drawn, stand, paint)
-        for t in _transmissions(plan, place, house, chosen)
+        inside(place.sun, t, place.weather, screens, drawn, stand, paint)
+        if finer is None
+        else finer.inside(t, place.weather, screens, drawn, stand, paint)
+        for t in _transmissions(plan, place, house, chosen, finer)
     )
     case = HeatCase(
         outside=place.outside,
@@ -230,7 +250,7 @@ def budget(plan: Plan, place: Place) -> Budget:
         gain_wet=_gain(wet),
     )
     like = (covering.layers, len(screens))
-    heat = solve(case, place.warm.get(like))
+    heat = _heat(case, place, plan, place.warm.get(like))
     place.warm[like] = heat
     return Budget(
         plan,
@@ -264,4 +284,7 @@ def _notes(plan: Plan, place: Place, chosen: Chosen, house: House) -> tuple[str,
     for name in (keys.wall_covering, keys.gable_covering):
         if name is not None:
             notes += place.chosen(name).notes
+    if place.finer is not None:
+        names = dict.fromkeys((plan.covering, keys.wall_covering, keys.gable_covering))
+        notes += [place.finer.note(name) for name in names if name is not None]
     return tuple(notes)

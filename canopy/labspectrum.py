@@ -28,6 +28,7 @@ from weather.errors import UserError
 __all__ = ["LabCovering", "covering_from_spectrum", "read_lab_csv"]
 
 Kind = Literal["glass", "rigid plastic", "film"]
+Wet = Literal["film", "drops", "none"]
 
 THERMAL_FROM_UM: Final = 5.0  # a file that reaches from here to 14 µm carries the long-wave side too
 THERMAL_TO_UM: Final = 14.0
@@ -49,6 +50,8 @@ class LabCovering:
     inverted: Inverted
     assumed: tuple[str, ...]
     limits: tuple[str, ...]
+    stack: StackSpec  # what the optics were averaged from ...
+    wet: Wet  # ... and how water lies on it
 
 
 @dataclass(frozen=True)
@@ -71,7 +74,7 @@ def covering_from_spectrum(
     thickness_mm: float | None = None,
     *,
     kind: Kind | None = None,
-    wet: Literal["film", "drops", "none"] | None = None,
+    wet: Wet | None = None,
 ) -> LabCovering:
     """Return the covering whose single sheet has this spectrum at normal incidence.
 
@@ -93,9 +96,10 @@ def covering_from_spectrum(
         found = with_dark_bands(found, lab.wavelength_um)
     say_limits(lab, found, dark_known, limits)
     optics = _optics(lab, found, thickness, kind, _haze(lab, assumed), assumed)
-    covering = _record(path, name, thickness, kind, wet, optics, limits)
+    stack, state = _stack(thickness, kind, optics), wet or ("drops" if kind == "film" else "film")
+    covering = _record(path, name, kind, state, stack, limits)
     assumed.append(_reach(covering))
-    return LabCovering(covering, lab.wavelength_um, found, tuple(assumed), tuple(limits))
+    return LabCovering(covering, lab.wavelength_um, found, tuple(assumed), tuple(limits), stack, state)
 
 
 def _require_cover(path: Path, lab: LabSpectrum) -> None:
@@ -200,19 +204,13 @@ def _assumed_thermal(thickness_mm: float, kind: Kind, assumed: list[str]) -> Spe
     return EquivalentSheet(reflect, reflect, np.zeros(2), np.array([3.0, 100.0]))
 
 
-def _record(
-    path: Path,
-    name: str,
-    thickness_mm: float,
-    kind: Kind,
-    wet: Literal["film", "drops", "none"] | None,
-    optics: JoinedSheet,
-    limits: list[str],
-) -> Covering:
+def _stack(thickness_mm: float, kind: Kind, optics: JoinedSheet) -> StackSpec:
     solid = SOLIDS[{"glass": "soda-lime-clear", "film": "polyethylene"}.get(kind, "polycarbonate")]
     layer = LayerSpec(optics, f"laboratory sheet {thickness_mm:g} mm", thickness_mm / 1000.0, solid)
-    stack = StackSpec((layer,), (), (), None, GLASS_DROPS if kind == "glass" else PLASTIC_DROPS)
-    state = wet or ("drops" if kind == "film" else "film")
+    return StackSpec((layer,), (), (), None, GLASS_DROPS if kind == "glass" else PLASTIC_DROPS)
+
+
+def _record(path: Path, name: str, kind: Kind, state: Wet, stack: StackSpec, limits: list[str]) -> Covering:
     dry = optics_of(stack, "dry")
     moist = dry if state == "none" else optics_of(stack, state)
     entry = {

@@ -15,6 +15,7 @@ from numpy.typing import NDArray
 
 from canopy.balance import solve
 from canopy.candidate import Budget, Place, budget, make_place
+from canopy.finer import Finer
 from canopy.glazing_u import u_value
 from canopy.greyband import grey_band
 from canopy.hourly import closures, hourly_columns
@@ -178,8 +179,8 @@ def _finish(
     )
 
 
-def _run_notes(weather: Weather) -> tuple[str, ...]:
-    notes = []
+def _run_notes(weather: Weather, finer: Finer | None) -> tuple[str, ...]:
+    notes = [finer.said] if finer is not None else []
     if weather.clear_sky:
         notes.append("computed clear-sky year: light is an upper bound, nights are the coldest skies")
     if len(weather) * weather.step_s / 3600.0 < WHOLE_YEAR_H:
@@ -226,5 +227,5 @@ def simulate(study: Study, progress: Progress | None = None) -> Run:
         wall_s=clock.seconds,
         versions={"python": platform.python_version(), **{name: version(name) for name in PACKAGES}},
         weather_sha256=weather_hash(weather),
-        notes=_run_notes(weather),
+        notes=_run_notes(weather, place.finer),
     )

@@ -118,6 +118,8 @@ KEYS: Final[dict[str, tuple[str, str]]] = {
     "heating.store.spread_k": ("K", "between full and empty"),
     "heating.store.standing_loss_per_h": ("1/h", "share of the content lost"),
     "heating.store.reserve_pct": (PCT, "operating reserve on top"),
+    "bands.solar": ("µm", "edges of finer solar bands, with .28, .4, .7, .75, 1.35, 2.8; tables keep theirs"),
+    "bands.thermal": ("µm", "edges of finer long-wave bands, with 3, 8, 14, 100; tables keep theirs"),
     "screen.name": ("", "for candidate.screens"),
     "screen.based_on": ("", "screen of the library"),
     "screen.close_below_w_m2": (W, "energy screen: drawn while outside light is below ..."),

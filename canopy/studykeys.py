@@ -6,6 +6,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, field_validator, model_validator
 
+from canopy.bands import SOLAR, THERMAL, finer
 from canopy.seasonal import day_number
 from canopy.study import (
     ClimateKeys,
@@ -22,6 +23,7 @@ from canopy.study import (
     WeatherKeys,
 )
 
+MOST_EDGES = 40
 Share = Annotated[float, Field(ge=0, le=1)]
 
 
@@ -98,6 +100,23 @@ class CoveringKeys(Section):
         return self
 
 
+class BandKeys(Section):
+    """[bands]: finer bands to compute in; tables and report keep their own."""
+
+    solar: Annotated[list[Annotated[float, Field(ge=0.28, le=2.8)]], Field(max_length=MOST_EDGES)] = []
+    thermal: Annotated[list[Annotated[float, Field(ge=3, le=100)]], Field(max_length=MOST_EDGES)] = []
+
+    @field_validator("solar")
+    @classmethod
+    def _solar(cls, edges: list[float]) -> list[float]:
+        return list(finer(edges, SOLAR).edges) if edges else []
+
+    @field_validator("thermal")
+    @classmethod
+    def _thermal(cls, edges: list[float]) -> list[float]:
+        return list(finer(edges, THERMAL).edges) if edges else []
+
+
 class CandidateKeys(Section):
     """[[candidate]]: a covering, its screens, and overrides of house, crop, climate, heating."""
 
@@ -123,6 +142,7 @@ class StudyKeys(Section):
     crop: CropKeys = CropKeys()
     climate: ClimateKeys = ClimateKeys()
     heating: HeatingKeys = HeatingKeys()
+    bands: BandKeys = BandKeys()
     screen: list[ScreenKeys] = []
     covering: list[CoveringKeys] = []
     candidate: Annotated[list[CandidateKeys], Field(min_length=1, max_length=24)]
