@@ -216,7 +216,7 @@ class Stepper:
         response = Response(
             picked[:, 0], picked[:, 1], picked[:, 2:],
             1.0 + conductance / (soil.film - conductance), -(1.0 - start) / (soil.film - soil.conductance),
-            self.given,
+            len(ix.stores) - 1, self.given,
         )  # fmt: skip
         self.given = np.zeros(m.hours)
         carried, recalled, drive = march(m, response)

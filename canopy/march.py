@@ -2,13 +2,15 @@
 
 A step d of hour t answers to the step of the hour before through the stores, the film and the soil's modes.
 The march runs the steps of every chunk (day) at once. Chunk ends hand on to the next chunk in a second
-sweep; what is left by then is far below the step and the next Newton pass takes it up. The modes
-themselves are then recomputed exactly, and close on themselves where the record is periodic.
+sweep, and further ones where pipes hold very much water; what is left is far below the step and the next
+Newton pass takes it up. The modes themselves are then recomputed exactly, and close on themselves where the
+record is periodic.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Final
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,7 +20,9 @@ from canopy.vapour import FILM_FULL_KG_M2, FILM_MAX_KG_M2
 
 Floats = NDArray[np.float64]
 
-SWEEPS = 2
+SWEEPS: Final = (2, 12)  # fewest and most: pipes with much water remember for days
+HEAVY_PIPES: Final = 100.0  # W/K and m2 in an hour: such water carries a house over the night
+LEFT_OVER: Final = 0.5  # K of pipe water at a chunk's end that may be left to the next Newton pass
 
 
 def run_modes(model: Model, drive: Floats) -> Floats:
@@ -108,6 +112,7 @@ class Response:
     before: Floats
     drive_floor: Floats  # dT* per d(floor)
     drive_history: Floats  # dT* per d(history)
+    slowest: int  # row of the pipe water, whose left-over decides on a further sweep
     given: Floats  # T* changes that are in the iterate already, but not yet in the soil's modes
 
 
@@ -125,7 +130,8 @@ def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
     periodic = model.case.periodic
     state, modes = np.zeros((carried, chunks)), np.zeros((len(soil.keep), chunks))
     out, history, drive = np.empty((carried, *cut)), np.empty(cut), np.empty(cut)
-    for _ in range(SWEEPS):
+    light = model.pipes.capacity < HEAVY_PIPES * model.step_s
+    for sweep in range(1, SWEEPS[1] + 1):
         now, ground = state, modes
         for k in range(steps):
             recalled = soil.recall @ ground
@@ -142,7 +148,11 @@ def march(model: Model, r: Response) -> tuple[Floats, Floats, Floats]:
             out[:, k], history[k], drive[k] = now, recalled, pushed
         fresh = ground - soil.keep[:, None] ** steps * modes
         ends = link_chunks(fresh, soil.keep**steps, periodic)
+        before_sweep = state
         state, modes = np.roll(now, 1, axis=1), np.roll(ends, 1, axis=1)
         if not periodic:
             state[:, 0], modes[:, 0] = 0.0, 0.0
+        left = float(np.abs((state - before_sweep)[r.slowest]).max())
+        if sweep >= SWEEPS[0] and (light or left < LEFT_OVER or not np.isfinite(left)):
+            break
     return out.reshape(carried, -1), history.ravel(), drive.ravel()
