@@ -26,6 +26,7 @@ Wet = Literal["film", "drops", "none"]
 
 AVERAGED: Final = "is averaged anew from its spectrum"
 TABLED: Final = "is tabled by band: each part of a band takes the band's value"
+PARTLY: Final = "is averaged anew; its layers that are tabled by band keep the band's value"
 QUOTED: Final = "is quoted: each part of a band takes the band's value"
 
 
@@ -85,7 +86,8 @@ def _library(
     dry = _row_optics(entry["name"], "dry", solar, thermal)
     moist = dry if wet == "none" else _row_optics(entry["name"], wet, solar, thermal)
     made = _rebuilt(base, dry, moist, parents(solar, SOLAR))
-    return made, TABLED if any("measured" in layer for layer in entry["layers"]) else AVERAGED
+    tabled = ["measured" in layer for layer in entry["layers"]]
+    return made, TABLED if all(tabled) else PARTLY if any(tabled) else AVERAGED
 
 
 @lru_cache(maxsize=64)

@@ -191,6 +191,17 @@ def test_two_clear_films_pass_the_window_as_their_spectra_say() -> None:
     assert error[-1] < 0.4 * error[0]
 
 
+def test_a_stack_of_spectrum_and_table_says_both() -> None:
+    study = study_of(BASE + TABLE + PLAIN)
+    base = library.covering("film-double-infrared")
+    made, how = finer_covering(base.name, base, study, finer(SOLAR_CUTS, SOLAR), finer(THERMAL_CUTS, THERMAL))
+    assert how == "is averaged anew; its layers that are tabled by band keep the band's value"
+    plain, infrared = made.thermal_dry.transmit
+    row = parents(finer(THERMAL_CUTS, THERMAL), THERMAL)
+    np.testing.assert_allclose(infrared, base.thermal_dry.transmit[1][row], rtol=1e-6)
+    assert np.ptp(plain[row == 1]) > 0.02
+
+
 MIXED = """
 [[covering]]
 name = "quoted"
