@@ -42,6 +42,13 @@ def alone(
     opening = best[model.index.vent].copy()
     at = np.flatnonzero(~done)
     if len(at):
+        part = model.take(at)
+        trial, ok = descend(part, _neutral(part), gone.take(at), closed)
+        for k in range(len(best)):
+            best[k][at[ok]] = trial[k][ok]
+        done[at[ok]] = True
+        at = at[~ok]
+    if len(at):
         part, before = model.take(at), gone.take(at)
         start, opening[at] = bracketed(part, [u[at] for u in unknown], before)
         trial, ok = descend(part, start, before, closed)
@@ -49,6 +56,19 @@ def alone(
             best[k][at[ok]] = trial[k][ok]
         done[at[ok]] = True
     return best, done, opening
+
+
+def _neutral(model: Model) -> list[Floats]:
+    """A start that no earlier iterate has spoilt: everything near outside, or near the heating set-point."""
+    ix, out = model.index, model.temp_out
+    warm = np.maximum(out, model.heat_at)
+    u = [warm.copy() for _ in range(ix.size)]
+    for layer in range(ix.layers):
+        u[ix.cover(layer)] = 0.5 * (warm + out) - 2.0
+    for space in range(ix.screens + 1):
+        u[ix.vapour(space)] = 1.1 * model.vapour_out
+    u[ix.vent] = np.where(model.open_all, model.gap_max + model.vent_max, 0.0)
+    return u
 
 
 def bracketed(model: Model, unknown: list[Floats], gone: Past) -> tuple[list[Floats], Floats]:
