@@ -70,16 +70,12 @@ def forced_cube(air_speed_sq: Floats) -> tuple[Floats, Floats]:
 
     Nu = 0.037 Re^0.8 Pr^1/3 (turbulent flat plate, heat-transfer textbooks) over PLATE_M.
     """
-    unit = (
-        0.037 * AIR_PRANDTL ** (1 / 3) * AIR_CONDUCTIVITY / PLATE_M * (PLATE_M / AIR_VISCOSITY_M2_S) ** 0.8
-    )
+    unit = 0.037 * AIR_PRANDTL ** (1 / 3) * AIR_CONDUCTIVITY / PLATE_M * (PLATE_M / AIR_VISCOSITY_M2_S) ** 0.8
     cube = unit**3 * air_speed_sq**1.2
     return cube, 1.2 * cube / air_speed_sq
 
 
-def cube_law(
-    coefficient: float | Floats, diff: Floats, forced: Floats
-) -> tuple[Floats, Floats, Floats]:
+def cube_law(coefficient: float | Floats, diff: Floats, forced: Floats) -> tuple[Floats, Floats, Floats]:
     """Mixed convection h = (h_free^3 + h_forced^3)^(1/3), h_free = coefficient |diff|^(1/3).
 
     Returns h, dh/d(diff), dh/d(forced cube). The cubic blend of free and forced flow is Churchill (1977). The
@@ -115,9 +111,7 @@ def leaf_boundary(diff: Floats, air_speed_sq: Floats) -> tuple[Floats, Floats, F
     return g, by_base * LEAF_WIDTH_M * diff / size, by_base * 207.0
 
 
-def leakage(
-    changes_per_h: float, height_m: float, wind_m_s: Floats, diff: Floats
-) -> tuple[Floats, Floats]:
+def leakage(changes_per_h: float, height_m: float, wind_m_s: Floats, diff: Floats) -> tuple[Floats, Floats]:
     """Leakage of a closed house, m3 s-1 per m2 floor, and its slope with inside - outside temperature.
 
     Shape of the ASHRAE basic infiltration model, Q ~ (Cs |dT| + Cw v^2)^0.5, scaled so that the stated air
@@ -204,9 +198,7 @@ def gas_layer(gap: Gap, slope_deg: float) -> GasLayer:
     power = float(np.interp(slope_deg, angles, [0.28, 0.31, 0.38]))
     grashof = GRAVITY * gap.thickness_m**3 * density**2 / (283.15 * viscosity**2)
     prandtl = viscosity * heat / conductivity
-    return GasLayer(
-        conductivity / gap.thickness_m, grashof * prandtl, factor, power, gap.web_conductance
-    )
+    return GasLayer(conductivity / gap.thickness_m, grashof * prandtl, factor, power, gap.web_conductance)
 
 
 def gap_conductance(layer: GasLayer, diff: Floats) -> tuple[Floats, Floats]:

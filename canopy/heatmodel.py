@@ -184,9 +184,11 @@ def _exchange(case: HeatCase, p: Pipes, gap: Floats, drawn: Floats, gap_max: Flo
     wet = [x - y for x, y in zip(areas(case.covering.wet, 0.0 * k_max), (pair, outside), strict=True)]
     opened = bool((k_max > 0.0).any())
     scale = np.where(k_max > 0.0, 1.0 / np.where(k_max > 0.0, k_max, 1.0), 0.0)
-    by_gap = [
-        (x - y) * scale for x, y in zip(areas(case.covering.dry, k_max), (pair, outside), strict=True)
-    ] if opened else [0.0 * pair, 0.0 * outside]
+    by_gap = (
+        [(x - y) * scale for x, y in zip(areas(case.covering.dry, k_max), (pair, outside), strict=True)]
+        if opened
+        else [0.0 * pair, 0.0 * outside]
+    )
 
     def hourly(values: Floats) -> Floats:
         return np.ascontiguousarray(values[:, which]) if cases.shape[1] > 1 else values
@@ -316,7 +318,7 @@ def _gap_limit(case: HeatCase, order: Order, hours: int) -> Floats:
     """Widest gap that the drawn screens may open for humidity or heat, share of their area."""
     if not case.screens or case.climate.screen_gap_max is None:
         return np.zeros(hours)
-    return np.asarray(order.into(case.climate.screen_gap_max) * (case.climate.screen_drawn.max(axis=0) > 0.0)[
-        order_index(order)
-    ])
-
+    return np.asarray(
+        order.into(case.climate.screen_gap_max)
+        * (case.climate.screen_drawn.max(axis=0) > 0.0)[order_index(order)]
+    )

@@ -127,9 +127,11 @@ class _Pool:
         """One step; where it does not lower the open amount it is taken back and shortened."""
         ix = self.model.index
         first = bool(np.isinf(self.error).all())
-        trial = self.u if first else [
-            _held(self.model, k, self.u[k] + self.share * self.step[k]) for k in range(ix.size)
-        ]
+        trial = (
+            self.u
+            if first
+            else [_held(self.model, k, self.u[k] + self.share * self.step[k]) for k in range(ix.size)]
+        )
         context = evaluate(self.model, trial, self.gone)
         error = opened(context)
         sides: list[list[Entry]] = [[r.copy()] for r in context.system.residual]

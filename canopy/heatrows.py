@@ -274,7 +274,7 @@ def _dew(c: Context, node: int, low: int, high: int, drawn: Floats, by_vent: Flo
     m, ix = c.model, c.ix
     e_low, t_low = ix.vapour(low), ix.air(low)
     excess = c.u[e_low] - c.saturation[node][0]
-    on = (excess > 0.0)
+    on = excess > 0.0
     h, slope = coefficients[0]
     unit = np.where(on, m.lewis * drawn, 0.0)
     dew = unit * h * excess

@@ -68,9 +68,7 @@ def soil_modes(ground: Ground, step_s: float) -> SoilModes:
     link = 1.0 / (half[:-1] + half[1:])
     top = 1.0 / (1.0 / FILM_W_M2_K + ground.surface_resistance + half[0])
     bottom = 1.0 / half[-1]
-    matrix = np.diag(
-        np.concatenate([[top], link]) + np.concatenate([link, [bottom]])
-    )
+    matrix = np.diag(np.concatenate([[top], link]) + np.concatenate([link, [bottom]]))
     index = np.arange(SLICES - 1)
     matrix[index, index + 1] = matrix[index + 1, index] = -link
     root = np.sqrt(heat)
