@@ -72,7 +72,7 @@ KEYS: Final[dict[str, tuple[str, str]]] = {
     "crop.row_width": (M, "of a row of crop; closed stand if absent"),
     "crop.row_spacing": (M, "row middle to row middle"),
     "crop.row_azimuth": (DEG, "direction of the rows; as the ridge if absent"),
-    "crop.height": (M, "of the crop; light is counted at its top, under an arch at most as high as the gutter"),
+    "crop.height": (M, "of the crop; light counts at its top, under an arch at most at gutter height"),
     "crop.ground_cover": ("", "what lies under the crop, from the library"),
     "climate.heat_day": (C, "heated to by day; dates hold from each on"),
     "climate.heat_night": (C, "heated to by night"),
