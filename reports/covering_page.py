@@ -2,11 +2,8 @@
 
 from __future__ import annotations
 
-from importlib.metadata import version
 from pathlib import Path
 from typing import Any
-
-from markupsafe import Markup
 
 from canopy import library_rows
 from canopy.bands import SOLAR
@@ -90,7 +87,7 @@ def _words(name: str) -> tuple[str, ...]:
 
 def write_covering_page(name: str, path: Path) -> None:
     """Write the page. UserError for an unknown covering or a file that cannot be written."""
-    from reports.page import environment, packed_plotly
+    from reports.page import single_text
 
     row_table = library_rows.table("covering", name)
     row = library_rows.row(name)
@@ -110,17 +107,6 @@ def write_covering_page(name: str, path: Path) -> None:
         "How is it known?",
         (Text((f"{row.provenance}: {row.source}", f"Ranges: {row.range_source}", f"Bands: {bands}.")),),
     )
-    templates = environment()
-    loader = templates.loader
-    assert loader is not None
-    raw = {file: Markup(loader.get_source(templates, file)[0]) for file in ("page.css", "page.js")}
-    text = templates.get_template("covering.html").render(
-        title=row_table["title"],
-        under=f"{name}, {row_table['kind']}",
-        sections=(section, sources),
-        version=version("canopy-budget"),
-        css=raw["page.css"],
-        js=raw["page.js"],
-        plotter=Markup(packed_plotly()),
-    )
+    under = f"{name}, {row_table['kind']}"
+    text = single_text(row_table["title"], "Covering of the library", under, (section, sources))
     write_whole(text, path)

@@ -6,6 +6,7 @@ import base64
 import gzip
 import json
 from functools import cache
+from importlib.metadata import version
 from importlib.util import find_spec
 from pathlib import Path
 from typing import Any
@@ -88,6 +89,23 @@ def environment() -> Environment:
     made.globals["signs"] = SYMBOL_SIGNS
     made.globals["hatches"] = HATCHES
     return made
+
+
+def single_text(title: str, over: str, under: str, sections: tuple[Section, ...]) -> str:
+    """Return a page about one thing (a covering, a weather record): sections of text, tables, figures."""
+    templates = environment()
+    loader = templates.loader
+    assert loader is not None
+    return templates.get_template("single.html").render(
+        title=title,
+        over=over,
+        under=under,
+        sections=sections,
+        version=version("canopy-budget"),
+        css=Markup(loader.get_source(templates, "page.css")[0]),
+        js=Markup(loader.get_source(templates, "page.js")[0]),
+        plotter=Markup(packed_plotly()),
+    )
 
 
 def page_text(run: Run) -> str:

@@ -7,8 +7,6 @@ import tempfile
 from pathlib import Path
 from typing import Any
 
-from markupsafe import Markup
-
 from reports.blocks import Block, Points, Section, Table, Text
 from reports.weather_climate import Climate, climate, design_lines, month_rows
 from weather.errors import UserError
@@ -143,24 +141,10 @@ def _row(cells: tuple[str, ...]) -> Any:
 
 def weather_page(weather: Weather, path: Path) -> None:
     """Write one self-contained page with interactive figures; nothing half-written is left behind."""
-    from importlib.metadata import version
+    from reports.page import single_text
 
-    from reports.page import environment, packed_plotly
-
-    found = climate(weather)
-    templates = environment()
-    loader = templates.loader
-    assert loader is not None
-    raw = {name: Markup(loader.get_source(templates, name)[0]) for name in ("page.css", "page.js")}
-    text = templates.get_template("weather.html").render(
-        title=weather.title,
-        under=head_lines(weather)[3],
-        sections=_sections(weather, found),
-        version=version("canopy-budget"),
-        css=raw["page.css"],
-        js=raw["page.js"],
-        plotter=Markup(packed_plotly()),
-    )
+    sections = tuple(_sections(weather, climate(weather)))
+    text = single_text(weather.title, "Weather record, checked", head_lines(weather)[3], sections)
     write_whole(text, path)
 
 
