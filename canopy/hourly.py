@@ -11,6 +11,7 @@ from canopy.bands import NIR_BANDS, SOLAR
 from canopy.columns import BY_NAME, COLUMNS, GAINS, LOSSES, STORES
 from canopy.degreedays import TABLE_BASE_C, below
 from canopy.heatcase import HeatCase, HeatResult
+from canopy.leaflight import leaf_light
 from canopy.light import Light, SunBands
 from canopy.run import Closure
 from weather.constants import ZERO_C_K
@@ -48,9 +49,7 @@ def photons_per_joule(sun: SunBands, weather: Weather) -> Floats:
 def _light_columns(weather: Weather, sun: SunBands, light: Light, lai: Floats) -> dict[str, Floats]:
     per_joule = photons_per_joule(sun, weather)
     inside = light.inside_beam + light.inside_diffuse
-    shaded_lai = np.maximum(lai - light.sunlit_lai, 0.0)
-    sunlit = light.crop_sunlit[PAR]
-    shaded = np.maximum(light.crop[PAR] - sunlit, 0.0)
+    leaves = leaf_light(light, lai, per_joule)
     return {
         "outside_global_w_m2": light.outside_beam.sum(0) + light.outside_diffuse.sum(0),
         "outside_beam_w_m2": light.outside_beam.sum(0),
@@ -67,16 +66,10 @@ def _light_columns(weather: Weather, sun: SunBands, light: Light, lai: Floats) -
         "screen_solar_w_m2": light.screen.sum((0, 1)) if len(light.screen) else np.zeros(len(weather)),
         "structure_solar_w_m2": light.structure.sum(0),
         "sunlit_lai_m2_m2": light.sunlit_lai,
-        "ppfd_sunlit_umol_m2_s": _per_leaf(sunlit * per_joule, light.sunlit_lai),
-        "ppfd_shaded_umol_m2_s": _per_leaf(shaded * per_joule, shaded_lai),
+        "ppfd_sunlit_umol_m2_s": leaves.ppfd_sunlit,
+        "ppfd_shaded_umol_m2_s": leaves.ppfd_shaded,
         "direct_sun_share": light.sunny,
     }
-
-
-def _per_leaf(absorbed: Floats, lai: Floats) -> Floats:
-    """Return absorbed light per m2 of leaf; 0 where there are no leaves of that class."""
-    some = lai > 1e-6
-    return np.where(some, absorbed / np.where(some, lai, 1.0), 0.0)
 
 
 def _heat_columns(case: HeatCase, heat: HeatResult) -> dict[str, Floats]:

@@ -1,13 +1,11 @@
-"""What weather and years do to a covering: dirt by month with wash days, age, how optics take the loss."""
+"""Dirt on a covering: light lost by month, and days on which it is washed off."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-
-from canopy.optics import SolarOptics
 
 Floats = NDArray[np.float64]
 Times = NDArray[np.datetime64]
@@ -53,38 +51,3 @@ def day_of_year(time: Times) -> NDArray[np.intp]:
     length = ((year + 1).astype("datetime64[D]") - year.astype("datetime64[D]")).astype(np.intp)
     late = (length == 366) & (number >= 59)
     return np.asarray(number - late)
-
-
-def age_factor(years: float, loss_per_year: float) -> float:
-    """Return the share of light left after years of yellowing and chalking, each taking the same share."""
-    return float((1.0 - loss_per_year) ** years)
-
-
-def dimmed(optics: SolarOptics, factor: Floats | float) -> SolarOptics:
-    """Return optics whose transmission both ways is times `factor` (scalar or per band, at most 1).
-
-    What no longer passes is absorbed in the outermost layer (dirt, weathered skin); reflection stays.
-    """
-    f = np.broadcast_to(np.asarray(factor, dtype=np.float64), optics.diffuse_in.shape)
-    lost = 1.0 - f
-    beam = optics.beam_absorbed.copy()
-    beam[0] += lost[:, None] * (optics.beam_beam + optics.beam_diffuse)
-    down, up = optics.absorbed_from_outside.copy(), optics.absorbed_from_inside.copy()
-    down[0] += lost * optics.diffuse_in
-    up[0] += lost * optics.diffuse_out
-    return replace(
-        optics,
-        beam_beam=optics.beam_beam * f[:, None],
-        beam_diffuse=optics.beam_diffuse * f[:, None],
-        beam_absorbed=beam,
-        diffuse_in=optics.diffuse_in * f,
-        diffuse_out=optics.diffuse_out * f,
-        absorbed_from_outside=down,
-        absorbed_from_inside=up,
-    )
-
-
-def clouded(optics: SolarOptics, share: float) -> SolarOptics:
-    """Return optics with this share of the unscattered beam turned into diffuse (dust, crazing, ageing)."""
-    moved = share * optics.beam_beam
-    return replace(optics, beam_beam=optics.beam_beam - moved, beam_diffuse=optics.beam_diffuse + moved)

@@ -9,6 +9,11 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from hypothesis import settings
+
+settings.register_profile("repeatable", derandomize=True)
+if os.environ.get("CI"):  # the same examples in every run; without it every run looks for new ones
+    settings.load_profile("repeatable")
 
 Cli = Callable[..., "subprocess.CompletedProcess[str]"]
 

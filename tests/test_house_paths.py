@@ -158,8 +158,10 @@ def test_nothing_is_made_from_nothing(house: House, zenith: float, azimuth: floa
         assert one.straight.min() >= -1e-9
         assert one.bounce.min() >= -1e-6
         assert (one.straight <= 0.91).all()
-    # boxes cut the Gauss pieces of an arch anew: within the error of the rule
-    assert (light.straight <= plain.straight + 2e-4).all()
+    # boxes cut the Gauss pieces of an arch anew: within the error of the rule, 2e-4 from suns 10 degrees up;
+    # shares are per unit on the horizontal, so that below the same error weighs as 1 / cos z
+    error = 2e-4 * max(1.0, np.cos(np.radians(80.0)) / np.cos(np.radians(zenith)))
+    assert (light.straight <= plain.straight + error).all()
 
 
 @settings(max_examples=25, deadline=None)

@@ -1,4 +1,4 @@
-"""Dirt, wash days, age: how much light is left, and that nothing is lost on the way."""
+"""Dirt and wash days: how much light is left."""
 
 from __future__ import annotations
 
@@ -7,11 +7,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from canopy.layers import build_solar
-from canopy.sheets import MaterialSheet
-from canopy.surfaces import Dirt, age_factor, clouded, day_of_year, dimmed
+from canopy.surfaces import Dirt, day_of_year
 
-HAZY = build_solar([MaterialSheet("pmma", 0.003, haze=0.3), MaterialSheet("soda-lime-clear", 0.004)])
 MONTHS = (0.08, 0.08, 0.07, 0.05, 0.04, 0.03, 0.03, 0.03, 0.04, 0.05, 0.06, 0.07)
 
 
@@ -41,29 +38,3 @@ def test_factor_by_hour() -> None:
     assert day_of_year(time)[::24].tolist() == [57, 58, 58, 59, 60]
     assert Dirt(MONTHS).factor(time) == pytest.approx(1.0 - Dirt(MONTHS).daily_loss()[day_of_year(time)])
     assert day_of_year(np.array(["1990-12-31"], dtype="datetime64[s]")).tolist() == [364]
-
-
-def test_age() -> None:
-    """Two per cent a year for ten years leave .817."""
-    assert age_factor(10.0, 0.02) == pytest.approx(0.98**10)
-    assert age_factor(0.0, 0.02) == 1.0
-
-
-@given(st.floats(0.0, 1.0), st.floats(0.0, 1.0))
-def test_dimmed_and_clouded_stay_whole(factor: float, share: float) -> None:
-    o = clouded(dimmed(HAZY, factor), share)
-    beam = o.beam_beam + o.beam_diffuse + o.beam_reflect + o.beam_absorbed.sum(axis=0)
-    assert beam == pytest.approx(np.ones_like(beam), abs=1e-12)
-    for passed, back, stays in (
-        (o.diffuse_in, o.reflect_outside, o.absorbed_from_outside),
-        (o.diffuse_out, o.reflect_inside, o.absorbed_from_inside),
-    ):
-        assert passed + back + stays.sum(axis=0) == pytest.approx(np.ones(5), abs=1e-12)
-    assert o.diffuse_in == pytest.approx(o.diffuse_out, abs=1e-12)
-    assert o.diffuse_in == pytest.approx(factor * HAZY.diffuse_in, abs=1e-12)
-    assert o.beam_beam == pytest.approx(factor * (1.0 - share) * HAZY.beam_beam, abs=1e-12)
-
-
-def test_bands_may_age_apart() -> None:
-    factor = np.array([0.5, 0.9, 0.95, 1.0, 1.0])
-    assert dimmed(HAZY, factor).diffuse_out == pytest.approx(factor * HAZY.diffuse_out)

@@ -37,7 +37,13 @@ def load_weather(request: WeatherRequest) -> Weather:
     if request.clear_sky:
         return _clear_sky_year(request)
     raw = _read(request)
-    return assemble(request, raw, settle_place(request, raw))
+    try:
+        return assemble(request, raw, settle_place(request, raw))
+    except UserError as error:
+        name = request.file.name if request.file is not None else ""
+        if name and name not in str(error):
+            raise UserError(f"{name}: {error}") from None
+        raise
 
 
 def load_many(request: WeatherRequest) -> tuple[Weather, ...]:

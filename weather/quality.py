@@ -253,7 +253,7 @@ def longwave_findings(read: Floats, model: Floats, modelled: Bools) -> tuple[Fin
     if made:
         text = (
             f"long-wave from the sky computed in {made} hours (Prata 1996, clouds by clearness, "
-            "night inversion; RMSE 10-13 W/m2 on measured records)"
+            "night inversion; RMSE 10-13 W/m2 on the two measured records it was fitted on)"
         )
         result.append(Finding("longwave", "note", text, made))
     if made < len(modelled):
